@@ -11,6 +11,10 @@ from dataclasses import dataclass
 from importlib import import_module
 from typing import Any
 
+from xlaxial.tables.words import ResultWord
+
+__all__ = ["Argument", "Function", "ResultWord", "load"]
+
 
 @dataclass(frozen=True)
 class Argument:
@@ -20,16 +24,6 @@ class Argument:
     help: str  # one sentence for the function wizard, ASCII, at most 255 characters
     kind: str = "value"  # "table" (a range with error cells), "cells" (a range or text, optional), "value" (one cell)
     optional: bool = False  # may be left out
-
-
-@dataclass(frozen=True)
-class ResultWord:
-    """One heading that a function answers."""
-
-    name: str  # as documents write it: "Force max"
-    dimension: str  # a key of xlaxial.units.DIMENSIONS, or "text", "count", "flag"
-    help: str  # one clause: what it is and its sign
-    aliases: tuple[str, ...] = ()  # other spellings that are understood
 
 
 @dataclass(frozen=True)
