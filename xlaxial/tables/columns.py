@@ -160,7 +160,7 @@ def read_labels(cells: list[Any], heading: Heading, report: Report) -> list[Any]
         key = (type(cell), cell)
         if key not in seen:
             try:
-                seen[key] = _label(cell)
+                seen[key] = label_of(cell)
             except AxialError as wrong:
                 report(i, replace(wrong.problem, heading=heading.text))
                 out.append(None)
@@ -169,7 +169,8 @@ def read_labels(cells: list[Any], heading: Heading, report: Report) -> list[Any]
     return out
 
 
-def _label(cell: Any) -> str | None:
+def label_of(cell: Any) -> str | None:
+    """Return a cell's label: text without surrounding blanks, a whole number as its digits, None for a blank."""
     if cell is None:
         return None
     if isinstance(cell, str):

@@ -1,0 +1,32 @@
+"""Force, stress and movement at places along bars, for profiles and charts."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from xlaxial.arrays import Floats, Ints
+from xlaxial.model.network import Actions, Bars, LinearState, Network
+from xlaxial.solver.flexibility import area_at, integrals
+
+
+@dataclass(frozen=True)
+class Stations:
+    """Results at places."""
+
+    force: Floats  # (n,) N, tension positive
+    stress: Floats  # (n,) Pa
+    displacement: Floats  # (n,) m
+
+
+def at_stations(
+    network: Network, actions: Actions, state: LinearState, preload: Floats, bar: Ints, x: Floats, case: int = 0
+) -> Stations:
+    """Return results at (n,) places: the bar and the distance x (m) from its start of each."""
+    some = Bars(**{name: getattr(network.bars, name)[bar] for name in Bars.__dataclass_fields__})
+    area = area_at(some, x)
+    first, second = integrals(some, x, area)
+    force, load = state.force_start[bar, case], actions.distributed[bar, case]
+    strain = (actions.imposed[bar, case] + preload[bar, case]) / some.length
+    u = state.displacement[some.start, case] + force * first - load * second + strain * x
+    here = force - load * x
+    return Stations(here, here / area, u)
