@@ -18,6 +18,7 @@ from xlaxial.units import unit
 
 _PLAIN = frozenset({float, int})
 _PLAIN_OR_BLANK = frozenset({float, int, type(None)})
+_HASHED = frozenset({float, int, str, type(None)})
 _AS_DATE = "the spreadsheet has turned this cell into a date"
 
 Report = Callable[[int, Problem], None]
@@ -149,23 +150,26 @@ def read_labels(cells: list[Any], heading: Heading, report: Report) -> list[Any]
     list of str or None
         Labels without surrounding blanks; the number 2 and 2.0 are "2"; None where blank or wrong.
     """
-    if set(map(type, cells)) == {str}:
-        labels = {cell: cell.strip() or None for cell in set(cells)}
-        if all(cell == label for cell, label in labels.items()):
-            return cells
-        return [labels[cell] for cell in cells]
-    seen: dict[Any, Any] = {None: None}
+    kinds = set(map(type, cells))
+    if kinds <= _HASHED:  # 2 and 2.0 are one key, and no TRUE is among them
+        labels: dict[Any, Any] = {}
+        wrong = False
+        for cell in set(cells):
+            try:
+                labels[cell] = label_of(cell)
+            except AxialError:
+                wrong = True
+        if not wrong:
+            if all(cell == label for cell, label in labels.items()):
+                return cells
+            return list(map(labels.__getitem__, cells))
     out: list[Any] = []
     for i, cell in enumerate(cells):
-        key = (type(cell), cell)
-        if key not in seen:
-            try:
-                seen[key] = label_of(cell)
-            except AxialError as wrong:
-                report(i, replace(wrong.problem, heading=heading.text))
-                out.append(None)
-                continue
-        out.append(seen[key])
+        try:
+            out.append(label_of(cell))
+        except AxialError as wrong_label:
+            report(i, replace(wrong_label.problem, heading=heading.text))
+            out.append(None)
     return out
 
 

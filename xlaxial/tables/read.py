@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass, field, replace
+from operator import itemgetter
 from typing import Any
 
 import numpy as np
@@ -74,7 +75,10 @@ class Table:
         if term in self.numbers:
             return self.numbers[term].present
         if term in self.labels:
-            return np.fromiter((x is not None for x in self.labels[term]), dtype=bool, count=self.n_rows)
+            labels = self.labels[term]
+            if labels.count(None) == 0:
+                return np.ones(self.n_rows, dtype=bool)
+            return np.array([label is not None for label in labels], dtype=bool)
         return np.zeros(self.n_rows, dtype=bool)
 
     def filled_marks(self) -> set[Any]:
@@ -129,7 +133,7 @@ def read_table(block: Any, kind: str, settings: Settings, headings: Any = None) 
     if n and min(map(len, rows)) < width:
         rows = [[*row, *([None] * (width - len(row)))] for row in rows]
     for name, heading in layout.headings.items():
-        cells = [row[heading.column] for row in rows]
+        cells = list(map(itemgetter(heading.column), rows))
         if heading.term.dimension == "text":
             labels = read_labels(cells, heading, table.reporter(name))
             if name == "Mark":

@@ -53,7 +53,8 @@ def find_members(table: Table) -> Members:
     ids: dict[Any, int] = {}
     filled = table.filled
     if bool(filled.all()) and not table.wrong:
-        row_member = np.fromiter((ids.setdefault(m, len(ids)) for m in table.marks), dtype=np.int64, count=table.n_rows)
+        ids = {mark: member for member, mark in enumerate(dict.fromkeys(table.marks))}
+        row_member = np.fromiter(map(ids.__getitem__, table.marks), dtype=np.int64, count=table.n_rows)
     else:
         row_member = np.full(table.n_rows, -1, dtype=np.int64)
         for i, (mark, holds) in enumerate(zip(table.marks, filled.tolist(), strict=True)):
@@ -104,8 +105,8 @@ def rows_of_members(table: Table, members: Members, one_row_call: bool) -> Ints:
             for member in range(members.count):
                 members.fail(member, problem)
         return out
-    code_of = members.code_of
-    out = np.fromiter((code_of.get(mark, -1) for mark in table.marks), dtype=np.int64, count=table.n_rows)
+    codes = {mark: members.code_of.get(mark, -1) for mark in set(table.marks)}
+    out = np.fromiter(map(codes.__getitem__, table.marks), dtype=np.int64, count=table.n_rows)
     if bool((out >= 0).all()) and bool(table.filled.all()) and not table.wrong:
         return out
     for i in np.flatnonzero((out < 0) | ~table.filled).tolist():

@@ -45,7 +45,7 @@ class Nodes:
             found = [self.labels.get(key, -1) for key in zip(member.tolist(), labels, strict=True)]
             return np.array(found, dtype=np.int64)
         numbers = {label: int(label) if label is not None and label.isdecimal() else -1 for label in set(labels)}
-        number = np.fromiter((numbers[label] for label in labels), dtype=np.int64, count=len(labels))
+        number = np.fromiter(map(numbers.__getitem__, labels), dtype=np.int64, count=len(labels))
         known = (member >= 0) & (number >= 0)
         at = np.where(member >= 0, member, 0)
         known &= number <= self.count[at]
@@ -165,9 +165,9 @@ def find_places(table: Table, rows: Ints, member: Ints, nodes: Nodes, members: M
     node = np.full(rows.size, -1, dtype=np.int64)
     named = np.zeros(rows.size, dtype=bool)
     if labels is not None:
-        wanted = [labels[i] for i in rows.tolist()]
+        wanted = labels if rows.size == len(labels) and bool((np.diff(rows) == 1).all()) else [labels[i] for i in rows.tolist()]
         node = nodes.find(member, wanted)
-        named = np.fromiter((label is not None for label in wanted), dtype=bool, count=rows.size)
+        named = table.present("Node")[rows]
         for k in np.flatnonzero(named & (node < 0)).tolist():
             problem = Problem(f"the member has no node {wanted[k]!r}", _node_remedy(nodes, int(member[k])))
             members.fail_row(table, int(rows[k]), problem, "Node", int(member[k]))
