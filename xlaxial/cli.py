@@ -1,0 +1,84 @@
+"""The command line; each command imports what it needs when it runs."""
+
+from __future__ import annotations
+
+import argparse
+import sys
+from collections.abc import Sequence
+from pathlib import Path
+
+
+def main(arguments: Sequence[str] | None = None) -> int:
+    """Run a command; return its exit code."""
+    options = _parser().parse_args(arguments)
+    code: int = options.run(options)
+    return code
+
+
+def _parser() -> argparse.ArgumentParser:
+    from xlaxial import __version__
+
+    parser = argparse.ArgumentParser(prog="xlaxial", description="Schedules of restrained axial members in workbooks.")
+    parser.add_argument("--version", action="version", version=f"xlaxial {__version__}")
+    commands = parser.add_subparsers(required=True, metavar="COMMAND")
+
+    recalc = commands.add_parser("recalc", help="recalculate a workbook and write it back, touching only what changed")
+    recalc.add_argument("book", type=Path)
+    where = recalc.add_mutually_exclusive_group()
+    where.add_argument("--output", type=Path, help="where to write; BOOK.recalculated.xlsx where left out")
+    where.add_argument("--in-place", action="store_true", help="write to the workbook itself; a backup is kept beside it")
+    recalc.add_argument("--no-backup", action="store_true", help="with --in-place: keep no backup")
+    recalc.set_defaults(run=_recalc)
+
+    verify = commands.add_parser(
+        "verify",
+        help="recompute and compare with the stored values",
+        epilog="exit 0: all hold; 1: some differ; 2: could not run; 3: what was recomputed holds, some cells could not be",
+    )
+    verify.add_argument("books", type=Path, nargs="+", metavar="BOOK")
+    verify.add_argument("--rtol", type=float, default=1e-9, help="relative difference that is still the same (1e-9)")
+    verify.add_argument("--report", type=Path, help="write a report: FILE.json, .xml (JUnit) or .html")
+    verify.set_defaults(run=_verify)
+
+    functions = commands.add_parser("functions", help="list the worksheet functions, or show one in full")
+    functions.add_argument("name", nargs="?")
+    functions.set_defaults(run=_functions)
+
+    demo = commands.add_parser("demo", help="write the demo schedule of quay tie rods")
+    demo.add_argument("output", type=Path)
+    demo.set_defaults(run=_demo)
+    return parser
+
+
+def _recalc(options: argparse.Namespace) -> int:
+    from xlaxial.hosts.headless.commands import recalc
+
+    return recalc(options.book, options.output, options.in_place, not options.no_backup)
+
+
+def _verify(options: argparse.Namespace) -> int:
+    from xlaxial.hosts.headless.commands import verify
+
+    return verify(options.books, options.rtol, options.report)
+
+
+def _functions(options: argparse.Namespace) -> int:
+    from xlaxial.functions.help import listing, page
+    from xlaxial.functions.registry import load
+
+    if options.name is None:
+        print(listing())
+        return 0
+    if options.name.upper() not in load():
+        print(f"no function {options.name}; known are {', '.join(load())}", file=sys.stderr)
+        return 2
+    print(page(options.name))
+    return 0
+
+
+def _demo(options: argparse.Namespace) -> int:
+    from xlaxial.demos.quay import write
+
+    write(options.output)
+    print(f"written to {options.output.name}")
+    return 0

@@ -1,0 +1,33 @@
+"""Defined names of the workbook and of its sheets, put in as text."""
+
+from __future__ import annotations
+
+import re
+from dataclasses import dataclass, field
+
+_NAME = re.compile(r"^[^\W\d][\w.\\?]*$")
+_QUALIFIED = re.compile(r"^('(?:[^']|'')+'|[^'!]+)!([^\W\d][\w.\\?]*)$")
+_RANGE = re.compile(r"^(?:(?:'(?:[^']|'')+'|[^'!()+*/,;\s-]+)!)?\$?[A-Z]{1,3}\$?\d+(?::\$?[A-Z]{1,3}\$?\d+)?$", re.IGNORECASE)
+_CELL = re.compile(r"^\$?[A-Z]{1,3}\$?\d{1,7}$", re.IGNORECASE)
+
+
+@dataclass
+class Names:
+    """Defined names; those of a sheet win over the workbook's."""
+
+    workbook: dict[str, str] = field(default_factory=dict)  # lower-case name -> text behind it
+    sheets: dict[tuple[str, str], str] = field(default_factory=dict)  # (lower-case sheet, name) -> text
+
+    def resolve(self, operand: str, sheet: str) -> str | None:
+        """Return the text to put in for an operand: a range as it is, a formula in brackets; None where no name."""
+        name, scope = operand, sheet.lower()
+        qualified = _QUALIFIED.match(operand)
+        if qualified:
+            scope, name = qualified[1].strip("'").replace("''", "'").lower(), qualified[2]
+        elif not _NAME.match(operand) or _CELL.match(operand):
+            return None
+        text = self.sheets.get((scope, name.lower()), self.workbook.get(name.lower()))
+        if text is None:
+            return None
+        text = text.lstrip("=")
+        return text if _RANGE.match(text) else f"({text})"
