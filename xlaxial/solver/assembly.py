@@ -71,7 +71,8 @@ class Stiffness:
         network, n = self._network, self._network.n_nodes
         start, end = network.bars.start, network.bars.end
         elastic = ~self.rigid
-        diagonal = np.bincount(network.supports.node[elastic], weights=support[elastic], minlength=n)
+        diagonal = np.zeros(n)  # bincount of nothing would be an array of integers
+        diagonal += np.bincount(network.supports.node[elastic], weights=support[elastic], minlength=n)
         if self.incidence.single:
             diagonal[:-1] += bar
             diagonal[1:] += bar
@@ -102,7 +103,8 @@ class Stiffness:
         """Return the diagonal once more, where a factorisation that failed has overwritten it."""
         network, n = self._network, self._network.n_nodes
         elastic = ~self.rigid
-        out = np.bincount(network.supports.node[elastic], weights=support[elastic], minlength=n)
+        out = np.zeros(n)
+        out += np.bincount(network.supports.node[elastic], weights=support[elastic], minlength=n)
         out += np.bincount(network.bars.start, weights=bar, minlength=n)
         out += np.bincount(network.bars.end, weights=bar, minlength=n)
         out[self.fixed] = 1.0
