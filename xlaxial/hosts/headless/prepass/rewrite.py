@@ -17,6 +17,7 @@ from xlaxial.hosts.headless.prepass.structured import TableArea, expand
 
 FIT = "AX__FIT"  # internal function that fits an array to its cells
 _EXTERNAL = re.compile(r"^'?[^'!]*\[\d+\]|^\[\d+\]")
+VOLATILE = frozenset({"NOW", "TODAY", "RAND", "RANDBETWEEN", "RANDARRAY"})
 _LONGEST = 8192
 
 
@@ -72,6 +73,8 @@ def rewrite(formula: str, sheet: str, row: int, column: int, context: Context, *
             else:
                 if _EXTERNAL.match(item.value):
                     raise CannotEvaluate("a function of another workbook")
+                if name in VOLATILE:
+                    raise CannotEvaluate(f"{name} changes at every recalculation")
                 frame.pieces.append(item.value.lstrip("@"))
                 stack.append(_Frame(name, False))
         elif item.type in (Token.FUNC, Token.PAREN) and item.subtype == Token.CLOSE:
