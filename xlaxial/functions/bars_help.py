@@ -62,7 +62,7 @@ SEGMENT_WORDS = (
     ResultWord("Stress max", "stress", "algebraically largest axial stress, inside the segment too", ("σ max", "Max stress")),
     ResultWord("Stress min", "stress", "algebraically least axial stress, inside the segment too", ("σ min", "Min stress")),
     ResultWord("Strain", "strain", "Stress over E (imposed strain and temperature not in it)", ("ε",)),
-    ResultWord("Elongation", "length", "change of length, lengthening positive", ("Extension", "ΔL", "Change of length")),
+    ResultWord("Elongation", "length", "change of the distance between its ends, lengthening positive (take-up by preload in it)", ("Extension", "ΔL", "Change of length")),
     ResultWord("Elongation max", "length", "algebraically largest over the combinations"),
     ResultWord("Elongation min", "length", "algebraically least over the combinations"),
     ResultWord("Displacement start", "length", "movement of the segment's start, towards +x positive", ("u start",)),
