@@ -26,14 +26,16 @@ def _parser() -> argparse.ArgumentParser:
     recalc.add_argument("book", type=Path)
     where = recalc.add_mutually_exclusive_group()
     where.add_argument("--output", type=Path, help="where to write; BOOK.recalculated.xlsx where left out")
-    where.add_argument("--in-place", action="store_true", help="write to the workbook itself; a backup is kept beside it")
+    where.add_argument(
+        "--in-place", action="store_true", help="write to the workbook itself; a backup is kept beside it"
+    )
     recalc.add_argument("--no-backup", action="store_true", help="with --in-place: keep no backup")
     recalc.set_defaults(run=_recalc)
 
     verify = commands.add_parser(
         "verify",
         help="recompute and compare with the stored values",
-        epilog="exit 0: all hold; 1: some differ; 2: could not run; 3: what was recomputed holds, some cells could not be",
+        epilog="exit 0: all hold; 1: some differ; 2: could not run; 3: what was recomputed holds, some could not be",
     )
     verify.add_argument("books", type=Path, nargs="+", metavar="BOOK")
     verify.add_argument("--rtol", type=float, default=1e-9, help="relative difference that is still the same (1e-9)")

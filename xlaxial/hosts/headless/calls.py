@@ -51,11 +51,16 @@ def _argument(tag: str, value: Any, dates: Dates) -> Any:
         return value
     sheet, first_row, first_column = place
     here = dates.get(sheet.lower())
-    if here:
+    if here and len(here) < len(value) * len(value[0]):
         for (row, column), date in here.items():
             i, j = row - first_row, column - first_column
             if 0 <= i < len(value) and 0 <= j < len(value[i]):
                 value[i][j] = date
+    elif here:
+        value = [
+            [here.get((first_row + i, first_column + j), cell) for j, cell in enumerate(cells)]
+            for i, cells in enumerate(value)
+        ]
     return CellRange(value, sheet, first_row, first_column)
 
 

@@ -29,7 +29,7 @@ def recalc(book: Path, output: Path | None, in_place: bool, keep_backup: bool = 
     """Recalculate a workbook and write it back; return the exit code."""
     target = book if in_place else output or book.with_name(f"{book.stem}.recalculated{book.suffix}")
     try:
-        done = recalculate(book, rtol=0.0)
+        done = recalculate(book, rtol=0.0, volatile=True)
         values = changed_values(done)
         backup = book.with_name(f"{book.stem}.backup{book.suffix}") if in_place and keep_backup and values else None
         if values or target != book:

@@ -10,7 +10,8 @@ from __future__ import annotations
 import datetime as dt
 import functools
 import math
-from collections.abc import Callable, Iterator, Sequence
+import threading
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from typing import Any
 
 import formualizer
@@ -85,10 +86,10 @@ class Engine:
     def __init__(self, *, date_1904: bool = False, seconds: float = 120.0) -> None:
         settings = formualizer.EvaluationConfig()
         settings.date_system = "1904" if date_1904 else "1900"
-        settings.max_eval_time_ms = int(seconds * 1000)
         mode = formualizer.WorkbookMode.Ephemeral
         self._book = formualizer.Workbook(config=formualizer.WorkbookConfig(mode=mode, eval_config=settings))
         self._book.set_temporal_egress("serial")
+        self._seconds = seconds
 
     def add_function(self, name: str, function: Callable[..., Any]) -> None:
         """Add a function; it gets and returns what the engine holds."""
@@ -98,17 +99,37 @@ class Engine:
         """Add an empty sheet."""
         self._book.add_sheet(name)
 
-    def set_rows(self, sheet: str, row: int, column: int, rows: Sequence[Sequence[Any]]) -> None:
-        """Put rows of values below each other from a cell on; blanks are passed over."""
+    def set_rows(self, sheet: str, rows: Mapping[int, Sequence[Any]]) -> None:
+        """Put rows of values into a sheet, each from column 1 on, by row number; blanks are passed over."""
         open_blocks: dict[tuple[int, int], int] = {}  # (first, last) column of a run -> row at which its block starts
-        for i in range(len(rows) + 1):
-            runs = set(_runs(rows[i])) if i < len(rows) else set()
-            for run in [run for run in open_blocks if run not in runs]:
-                start, (first, last) = open_blocks.pop(run), run
-                block = [[to_engine(value) for value in values[first:last]] for values in rows[start:i]]
-                self._book.set_values_batch(sheet, row + start, column + first, block)
+        before = 0
+        for row in [*sorted(rows), 0]:
+            runs = set(_runs(rows[row])) if row else set()
+            if row != before + 1:
+                self._close(sheet, rows, open_blocks, list(open_blocks), before)
+            self._close(sheet, rows, open_blocks, [run for run in open_blocks if run not in runs], before)
             for run in runs:
-                open_blocks.setdefault(run, i)
+                open_blocks.setdefault(run, row)
+            before = row
+
+    def _close(
+        self,
+        sheet: str,
+        rows: Mapping[int, Sequence[Any]],
+        open_blocks: dict[tuple[int, int], int],
+        ended: Sequence[tuple[int, int]],
+        last_row: int,
+    ) -> None:
+        """Hand over the blocks that end with a row."""
+        for first, last in ended:
+            start = open_blocks.pop((first, last))
+            block = [[to_engine(v) for v in rows[row][first:last]] for row in range(start, last_row + 1)]
+            self._book.set_values_batch(sheet, start, first + 1, block)
+
+    def set_value(self, sheet: str, row: int, column: int, value: Any) -> None:
+        """Put a value into a cell; a blank is passed over."""
+        if value is not None:
+            self._book.set_values_batch(sheet, row, column, [[to_engine(value)]])
 
     def set_formula(self, sheet: str, row: int, column: int, formula: str) -> None:
         """Put a formula into a cell; raises ValueError where the engine cannot read it."""
@@ -125,10 +146,15 @@ class Engine:
         TimeoutError
             It takes longer than allowed.
         """
+        limit = threading.Timer(self._seconds, self._book.cancel)  # the engine's own deadline lets long layers finish
+        limit.daemon = True
+        limit.start()
         try:
             self._book.evaluate_all()
-        except RuntimeError as wrong:
+        except (RuntimeError, formualizer.ExcelEvaluationError) as wrong:
             raise TimeoutError(str(wrong)) from None
+        finally:
+            limit.cancel()
 
     def value(self, sheet: str, row: int, column: int) -> Any:
         """Return a cell's value, or `Unevaluated`."""

@@ -155,9 +155,9 @@ def patched(data: bytes, values: Values) -> bytes:
         for column, cell in sorted(made.items()):
             after = next((at for other, at in sheet.in_row.get(row, []) if other > column), end)
             edits.append((after, after, cell))
-    for row, text in sorted(new_rows.items()):
+    for row, made_row in sorted(new_rows.items()):
         after = next((start for number, start, _ in sheet.rows if number > row), sheet.end)
-        edits.append((after, after, text))
+        edits.append((after, after, made_row))
     out, at = [], 0
     for start, end, new in sorted(edits, key=lambda edit: (edit[0], edit[1])):
         out += [data[at:start], new]
@@ -169,8 +169,9 @@ def patched(data: bytes, values: Values) -> bytes:
 def _new_cell(prefix: bytes, row: int, column: int, value: Any) -> bytes:
     kind, text = _content(value)
     place = f"{get_column_letter(column)}{row}".encode()
-    kind = b' t="' + kind + b'"' if kind else b""
-    return b"<" + prefix + b'c r="' + place + b'"' + kind + b"><" + prefix + b"v>" + text.encode() + b"</" + prefix + b"v></" + prefix + b"c>"
+    mark = b' t="' + kind + b'"' if kind else b""
+    value_tag = b"<" + prefix + b"v>" + text.encode() + b"</" + prefix + b"v>"
+    return b"<" + prefix + b'c r="' + place + b'"' + mark + b">" + value_tag + b"</" + prefix + b"c>"
 
 
 def write_values(path: Path, values: Mapping[str, Values], output: Path, backup: Path | None = None) -> None:
@@ -244,5 +245,5 @@ def _copy(package: zipfile.ZipFile, path: Path, file: Any, new: Mapping[str, byt
             out.start_dir = file.tell()
             out.filelist.append(same)
             out.NameToInfo[same.filename] = same
-        out._didModify = True  # type: ignore[attr-defined]  # noqa: SLF001 - the directory is to be written
+        out._didModify = True  # type: ignore[attr-defined]  # the directory is to be written
         out.comment = package.comment

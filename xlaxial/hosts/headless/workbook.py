@@ -3,21 +3,26 @@
 from __future__ import annotations
 
 import datetime as dt
+import functools
+import io
 import warnings
+import zipfile
 from dataclasses import dataclass, field
 from pathlib import Path
 from typing import Any
 
 from openpyxl import load_workbook
+from openpyxl.reader.strings import read_string_table
 from openpyxl.utils import range_boundaries
+from openpyxl.utils.datetime import CALENDAR_MAC_1904
 from openpyxl.worksheet.formula import ArrayFormula, DataTableFormula
 
 from xlaxial.cells import ERROR_CODES, CellError
-from xlaxial.hosts.headless.engine import serial
 from xlaxial.hosts.headless.errors import WorkbookError
-from xlaxial.hosts.headless.package import SheetPart, open_package, refuse_entities, sheet_parts
+from xlaxial.hosts.headless.package import SheetPart, open_package, read_part, refuse_entities, sheet_parts
 from xlaxial.hosts.headless.prepass.names import Names
 from xlaxial.hosts.headless.prepass.structured import TableArea
+from xlaxial.hosts.headless.stored import StoredValues
 
 
 @dataclass(frozen=True)
@@ -32,6 +37,13 @@ class Formula:
     dynamic: bool = False  # the array spills by itself
     data_table: bool = False
 
+    def places(self) -> list[tuple[int, int]]:
+        """(row, column) of every cell that it fills."""
+        if self.area is None:
+            return [(self.row, self.column)]
+        c1, r1, c2, r2 = self.area
+        return [(row, column) for row in range(r1, r2 + 1) for column in range(c1, c2 + 1)]
+
 
 @dataclass
 class Sheet:
@@ -39,10 +51,15 @@ class Sheet:
 
     name: str
     part: str
-    rows: list[list[Any]] = field(default_factory=list)  # values, None where blank or a formula stands
+    rows: dict[int, list[Any]] = field(default_factory=dict)  # values by row number, None where blank or a formula
     formulas: list[Formula] = field(default_factory=list)
     stored: dict[tuple[int, int], Any] = field(default_factory=dict)  # stored results of formulas and array cells
     dates: dict[tuple[int, int], dt.datetime | dt.date | dt.time | dt.timedelta] = field(default_factory=dict)
+    extent: tuple[int, int] = (1, 1)  # last row and column in use
+
+    def extend_to(self, row: int, column: int) -> None:
+        """Take a cell into the extent."""
+        self.extent = max(row, self.extent[0]), max(column, self.extent[1])
 
 
 @dataclass
@@ -53,6 +70,7 @@ class Book:
     sheets: list[Sheet]
     tables: dict[str, TableArea]
     names: Names
+    date_1904: bool = False  # day 0 of its dates is 1904-01-01
 
 
 def read_book(path: Path) -> Book:
@@ -63,22 +81,28 @@ def read_book(path: Path) -> Book:
     WorkbookError
         One line for a person, where the file cannot be taken up.
     """
-    with open_package(path) as package:
-        try:
+    try:
+        with open_package(path) as package:
             refuse_entities(package)
             parts = sheet_parts(package)
-        except WorkbookError as wrong:
-            raise WorkbookError(f"{path.name}: {wrong}") from None
-    try:
-        with warnings.catch_warnings():
-            warnings.simplefilter("ignore")
-            source = load_workbook(path, keep_links=False)
-            stored = load_workbook(path, keep_links=False, data_only=True)
+            shared = functools.cache(lambda: _shared_strings(package))
+            with warnings.catch_warnings():
+                warnings.simplefilter("ignore")
+                source = load_workbook(path, keep_links=False)
+            found = [part for part in parts if part.name in source.sheetnames]
+            if len(found) != len(parts) or any(not hasattr(source[part.name], "iter_rows") for part in found):
+                raise WorkbookError("its sheets cannot be told apart")
+            sheets = [
+                _read_sheet(part, source[part.name], StoredValues(read_part(package, part.part), shared))
+                for part in parts
+            ]
+    except WorkbookError as wrong:
+        text = str(wrong)
+        raise WorkbookError(text if text.startswith(path.name) else f"{path.name}: {text}") from None
     except Exception as wrong:  # noqa: BLE001 - openpyxl raises many kinds on damaged files
-        raise WorkbookError(f"{path.name}: cannot be read as a workbook ({type(wrong).__name__}: {wrong})"[:300]) from None
-    sheets = [_read_sheet(part, source, stored) for part in parts if part.name in source.sheetnames]
-    if len(sheets) != len(parts) or any(not hasattr(source[sheet.name], "iter_rows") for sheet in sheets):
-        raise WorkbookError(f"{path.name}: its sheets cannot be told apart")
+        raise WorkbookError(
+            f"{path.name}: cannot be read as a workbook ({type(wrong).__name__}: {wrong})"[:300]
+        ) from None
     names, tables = Names(), {}
     for name, defined in source.defined_names.items():
         names.workbook[name.lower()] = defined.attr_text or ""
@@ -93,60 +117,49 @@ def read_book(path: Path) -> Book:
                 table.displayName, worksheet.title, r1, r2, c1, columns, bool(headings), bool(table.totalsRowCount)
             )
             tables[table.displayName.lower()] = area
-    return Book(path, sheets, tables, names)
+    return Book(path, sheets, tables, names, source.epoch == CALENDAR_MAC_1904)
 
 
-def _read_sheet(part: SheetPart, source: Any, stored: Any) -> Sheet:
-    worksheet, results = source[part.name], stored[part.name]
+def _shared_strings(package: zipfile.ZipFile) -> list[str]:
+    name = next((name for name in package.namelist() if name.lower().endswith("sharedstrings.xml")), None)
+    return [] if name is None else list(read_string_table(io.BytesIO(read_part(package, name))))
+
+
+def _read_sheet(part: SheetPart, worksheet: Any, stored: StoredValues) -> Sheet:
     sheet = Sheet(part.name, part.part)
-    covered: set[tuple[int, int]] = set()
-    for cells in worksheet.iter_rows():
-        values: list[Any] = []
-        for cell in cells:
-            value = cell.value
-            if value is None:
-                values.append(None)
-                continue
-            if cell.data_type == "f" or isinstance(value, (ArrayFormula, DataTableFormula)):
-                sheet.formulas.append(_formula(part, cell, value))
-                values.append(None)
-                continue
-            if cell.data_type == "e" or (isinstance(value, str) and value in ERROR_CODES and cell.data_type == "e"):
-                values.append(CellError(value) if value in ERROR_CODES else CellError("#VALUE!"))
-                continue
-            if isinstance(value, (dt.datetime, dt.date, dt.time, dt.timedelta)):
-                sheet.dates[cell.row, cell.column] = value
-            values.append(serial(value))
-        sheet.rows.append(values)
+    for (row, column), cell in worksheet._cells.items():  # `iter_rows` would walk through all blanks
+        value, kind = cell.value, cell.data_type
+        if value is None:
+            continue
+        if kind == "f":
+            sheet.formulas.append(_formula(part, cell, value, stored))
+            sheet.extend_to(row, column)
+            continue
+        if kind == "e":
+            value = CellError(value) if value in ERROR_CODES else CellError("#VALUE!")
+        elif kind == "d":
+            sheet.dates[row, column] = value
+            value = stored[row, column]
+        values = sheet.rows.setdefault(row, [])
+        if column > len(values):
+            values.extend([None] * (column - len(values)))
+            sheet.extend_to(row, column)
+        values[column - 1] = value
     for formula in sheet.formulas:
-        places = [(formula.row, formula.column)]
-        if formula.area:
-            c1, r1, c2, r2 = formula.area
-            places = [(r, c) for r in range(r1, r2 + 1) for c in range(c1, c2 + 1)]
-            covered.update(places)
-        for row, column in places:
-            cell = results._cells.get((row, column))  # noqa: SLF001 - `cell()` would create it
-            sheet.stored[row, column] = _stored(cell)
-    for row, column in covered:  # what an array formula fills is not an input
-        if row <= len(sheet.rows) and column <= len(sheet.rows[row - 1]):
-            sheet.rows[row - 1][column - 1] = None
+        for row, column in formula.places():
+            sheet.stored[row, column] = stored[row, column]
+            if formula.area:
+                sheet.extend_to(row, column)
+                if column <= len(sheet.rows.get(row, ())):
+                    sheet.rows[row][column - 1] = None  # what an array formula fills is no input
     return sheet
 
 
-def _formula(part: SheetPart, cell: Any, value: Any) -> Formula:
+def _formula(part: SheetPart, cell: Any, value: Any, stored: StoredValues) -> Formula:
     if isinstance(value, DataTableFormula):
-        return Formula(part.name, cell.row, cell.column, "=TABLE()", data_table=True)
+        return Formula(part.name, cell.row, cell.column, "=TABLE()", range_boundaries(value.ref), data_table=True)
     if isinstance(value, ArrayFormula):
-        text = value.text or ""
-        area = range_boundaries(value.ref)
-        dynamic = cell.coordinate in part.dynamic
-        return Formula(part.name, cell.row, cell.column, "=" + text.lstrip("="), area, dynamic)
+        text = "=" + (value.text or "").lstrip("=")
+        dynamic = (cell.row, cell.column) in stored.dynamic
+        return Formula(part.name, cell.row, cell.column, text, range_boundaries(value.ref), dynamic)
     return Formula(part.name, cell.row, cell.column, str(value))
-
-
-def _stored(cell: Any) -> Any:
-    if cell is None or cell.value is None:
-        return None
-    if cell.data_type == "e":
-        return CellError(cell.value) if cell.value in ERROR_CODES else CellError("#VALUE!")
-    return serial(cell.value)

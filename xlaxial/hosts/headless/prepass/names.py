@@ -7,7 +7,9 @@ from dataclasses import dataclass, field
 
 _NAME = re.compile(r"^[^\W\d][\w.\\?]*$")
 _QUALIFIED = re.compile(r"^('(?:[^']|'')+'|[^'!]+)!([^\W\d][\w.\\?]*)$")
-_RANGE = re.compile(r"^(?:(?:'(?:[^']|'')+'|[^'!()+*/,;\s-]+)!)?\$?[A-Z]{1,3}\$?\d+(?::\$?[A-Z]{1,3}\$?\d+)?$", re.IGNORECASE)
+_RANGE = re.compile(
+    r"^(?:(?:'(?:[^']|'')+'|[^'!()+*/,;\s-]+)!)?\$?[A-Z]{1,3}\$?\d+(?::\$?[A-Z]{1,3}\$?\d+)?$", re.IGNORECASE
+)
 _CELL = re.compile(r"^\$?[A-Z]{1,3}\$?\d{1,7}$", re.IGNORECASE)
 
 

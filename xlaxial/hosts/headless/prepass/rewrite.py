@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+from collections.abc import Callable
 from dataclasses import dataclass, field
 
 from openpyxl.formula import Tokenizer
@@ -10,15 +11,18 @@ from openpyxl.formula.tokenizer import Token
 
 from xlaxial.hosts.headless.errors import CannotEvaluate
 from xlaxial.hosts.headless.prepass.arguments import tagged
-from xlaxial.hosts.headless.prepass.intersection import ONE_VALUE, intersect
+from xlaxial.hosts.headless.prepass.intersection import intersect, is_range, takes_one_value
 from xlaxial.hosts.headless.prepass.names import Names
 from xlaxial.hosts.headless.prepass.prefixes import bare_name
 from xlaxial.hosts.headless.prepass.structured import TableArea, expand
 
 FIT = "AX__FIT"  # internal function that fits an array to its cells
 _EXTERNAL = re.compile(r"^'?[^'!]*\[\d+\]|^\[\d+\]")
-VOLATILE = frozenset({"NOW", "TODAY", "RAND", "RANDBETWEEN", "RANDARRAY"})
 _LONGEST = 8192
+_DEEPEST = 20  # names within names
+_VOLATILE = frozenset(("NOW", "TODAY", "RAND", "RANDBETWEEN", "RANDARRAY"))
+_REACHING = frozenset(("INDIRECT", "OFFSET"))
+_LOCAL = ("_xlpm.", "_xleta.")  # prefixes of names that LET and LAMBDA define
 
 
 @dataclass
@@ -29,6 +33,7 @@ class Context:
     tables: dict[str, TableArea] = field(default_factory=dict)  # by lower-case name
     names: Names = field(default_factory=Names)
     extents: dict[str, tuple[int, int]] = field(default_factory=dict)  # rows and columns in use by lower-case sheet
+    knows: Callable[[str], bool] = lambda _: True  # whether the engine has a function
 
 
 @dataclass
@@ -36,16 +41,151 @@ class Rewritten:
     """A formula for the engine, and what it reads."""
 
     text: str
-    calls_ours: bool
-    references: list[str]  # operands that are ranges or cells, as put in
+    calls_ours: bool = False
+    references: list[str] = field(default_factory=list)  # operands that are ranges or cells, as put in
+    volatile: bool = False  # gives another value at every calculation
+    reaching: bool = False  # reads cells that its text does not name
+    by_place: bool = False  # what was put in depends on where the formula stands
 
 
 @dataclass
 class _Frame:
-    function: str  # "" at the top, and in brackets the function around them
-    ours: bool
+    function: str  # "" at the top and for brackets
+    handled: bool = False  # ours, or one of the internal ones: its text is made when it closes
     pieces: list[str] = field(default_factory=list)  # of the argument at hand
-    arguments: list[str] = field(default_factory=list)  # finished ones, ours only
+    arguments: list[str] = field(default_factory=list)  # finished ones, handled functions only
+    argument: int = 0  # number of the argument at hand, from 0
+
+
+class _Rewriting:
+    """The state of one rewriting."""
+
+    def __init__(self, sheet: str, row: int, column: int, context: Context, array: bool, depth: int) -> None:
+        self.sheet, self.row, self.column = sheet, row, column
+        self.context = context
+        self.array = array
+        self.depth = depth
+        self.made = Rewritten("")
+        self.stack = [_Frame("")]
+        self.space = self.after_value = False  # a space is pending; the last token ended a value
+
+    def take(self, item: Token) -> None:
+        """Take one token."""
+        frame = self.stack[-1]
+        if item.type == Token.WSPACE:
+            self.space = True
+            return
+        if item.value == ":":  # a range between two ends that stand apart
+            self.made.reaching = True
+            self.space = self.after_value = False
+            frame.pieces.append(":")
+            return
+        opens = item.type == Token.OPERAND or item.subtype == Token.OPEN
+        if self.space and self.after_value and opens:
+            frame.pieces.append(" ")  # the intersection operator; other spaces mean nothing
+        self.space, self.after_value = False, item.type == Token.OPERAND or item.subtype == Token.CLOSE
+        if item.type == Token.FUNC and item.subtype == Token.OPEN:
+            self._open(item.value, frame)
+        elif item.type in (Token.FUNC, Token.PAREN) and item.subtype == Token.CLOSE:
+            if len(self.stack) == 1:
+                raise CannotEvaluate("the brackets do not match")
+            self.stack.pop()
+            self.stack[-1].pieces.append(self._closed(frame))
+        elif item.type == Token.PAREN:
+            frame.pieces.append("(")
+            self.stack.append(_Frame("(", argument=0))
+        elif item.type == Token.SEP and item.subtype == Token.ARG:
+            frame.argument += 1
+            if frame.handled:
+                frame.arguments.append("".join(frame.pieces))
+                frame.pieces.clear()
+            else:
+                frame.pieces.append(item.value)
+        elif item.type == Token.OPERAND and item.subtype == Token.RANGE:
+            frame.pieces.append(self._operand(item.value))
+        else:
+            frame.pieces.append(item.value)
+
+    def _open(self, text: str, frame: _Frame) -> None:
+        end, colon, rest = text.rpartition(":")
+        if colon and not rest.endswith("'") and "!" not in rest:  # A1:INDEX(...
+            self.made.reaching = True
+            frame.pieces.append(self._resolved(end) + ":")
+            text = rest
+        name = bare_name(text[:-1])
+        self.made.volatile |= name in _VOLATILE
+        self.made.reaching |= name in _REACHING
+        if name in self.context.ours:
+            self.made.calls_ours = True
+            self.stack.append(_Frame(name, handled=True))
+            return
+        if _EXTERNAL.match(text):
+            raise CannotEvaluate("calls a function of another workbook")
+        if name == "SINGLE":
+            self.stack.append(_Frame(name, handled=True))
+            return
+        if not self.context.knows(name):
+            raise CannotEvaluate(f"the function {name} is not available here")
+        frame.pieces.append(name + "(")
+        self.stack.append(_Frame(name))
+
+    def _closed(self, frame: _Frame) -> str:
+        """Text of a finished call or bracket; where it is not handled its opening has been put in."""
+        inner = "".join(frame.pieces)
+        if not frame.handled:
+            return inner + ")"
+        arguments = [*frame.arguments, inner]
+        if frame.function == "SINGLE":
+            return f"({inner})" if re.fullmatch(r"[^()]+", inner) else f"{FIT}({inner},1,1)"
+        if len(arguments) == 1 and not inner.strip():
+            return f"{frame.function}()"
+        extents = self.context.extents
+        return f"{frame.function}(" + ",".join(tagged(text, self.sheet, extents) for text in arguments) + ")"
+
+    def _operand(self, value: str) -> str:
+        """Text to put in for a reference."""
+        marked = value.startswith("@")
+        text = self._resolved(value.lstrip("@"))
+        if text.startswith("("):
+            return text
+        self.made.references.append(text)
+        if not is_range(text):
+            return text
+        calls = [(frame.function, frame.argument) for frame in self.stack if frame.function != "("]
+        if marked or calls[-1][0] == "SINGLE" or (not self.array and takes_one_value(calls)):
+            self.made.by_place = True
+            return intersect(text, self.row, self.column)
+        return text
+
+    def _resolved(self, value: str) -> str:
+        """Plain reference, or a formula in brackets, behind a structured reference or a name."""
+        if _EXTERNAL.match(value):
+            raise CannotEvaluate("refers to another workbook")
+        if re.match(r"^'?[^'!\[\]]+:[^'!\[\]]+'?!", value):
+            raise CannotEvaluate("refers to several sheets as a stack")
+        if value.startswith(_LOCAL):
+            return value
+        if "[" in value and "!" not in value:
+            plain = expand(value, self.context.tables, self.sheet, self.row, self.column)
+            if plain is not None:
+                return plain
+        named = self.context.names.resolve(value, self.sheet)
+        if named is None:
+            return value
+        if "#REF!" in named:
+            return "#REF!"
+        if not named.startswith("("):
+            if _EXTERNAL.match(named):
+                raise CannotEvaluate("refers to another workbook")
+            return named
+        if self.depth >= _DEEPEST:
+            raise CannotEvaluate("its names go round in a circle")
+        inner = _rewritten("=" + named[1:-1], self.sheet, self.row, self.column, self.context, True, self.depth + 1)
+        self.made.references += inner.references
+        self.made.volatile |= inner.volatile
+        self.made.reaching |= inner.reaching
+        self.made.calls_ours |= inner.calls_ours
+        return f"({inner.text[1:]})"
 
 
 def rewrite(formula: str, sheet: str, row: int, column: int, context: Context, *, array: bool) -> Rewritten:
@@ -54,81 +194,23 @@ def rewrite(formula: str, sheet: str, row: int, column: int, context: Context, *
     Raises
     ------
     CannotEvaluate
-        It refers to another workbook, to sheets as a stack, or cannot be read.
+        It refers to another workbook, to sheets as a stack, calls what the engine lacks, or cannot be read.
     """
+    return _rewritten(formula, sheet, row, column, context, array, 0)
+
+
+def _rewritten(formula: str, sheet: str, row: int, column: int, context: Context, array: bool, depth: int) -> Rewritten:
     if len(formula) > _LONGEST:
         raise CannotEvaluate("the formula is too long")
     try:
         items = Tokenizer(formula).items
     except Exception as wrong:  # noqa: BLE001 - the tokenizer raises many kinds on damaged text
         raise CannotEvaluate(f"the formula cannot be read ({wrong})") from None
-    stack, calls_ours, references = [_Frame("", False)], False, []
+    rewriting = _Rewriting(sheet, row, column, context, array, depth)
     for item in items:
-        frame = stack[-1]
-        if item.type == Token.FUNC and item.subtype == Token.OPEN:
-            name = bare_name(item.value[:-1])
-            if name in context.ours:
-                calls_ours = True
-                stack.append(_Frame(name, True))
-            else:
-                if _EXTERNAL.match(item.value):
-                    raise CannotEvaluate("a function of another workbook")
-                if name in VOLATILE:
-                    raise CannotEvaluate(f"{name} changes at every recalculation")
-                frame.pieces.append(item.value.lstrip("@"))
-                stack.append(_Frame(name, False))
-        elif item.type in (Token.FUNC, Token.PAREN) and item.subtype == Token.CLOSE:
-            if len(stack) == 1:
-                raise CannotEvaluate("the brackets do not match")
-            stack.pop()
-            stack[-1].pieces.append(_closed(frame, sheet, context))
-        elif item.type == Token.PAREN:
-            frame.pieces.append("(")
-            stack.append(_Frame(frame.function, False))
-        elif item.type == Token.SEP and item.subtype == Token.ARG and frame.ours:
-            frame.arguments.append("".join(frame.pieces))
-            frame.pieces.clear()
-        elif item.type == Token.OPERAND and item.subtype == Token.RANGE:
-            text = _operand(item.value, sheet, row, column, context)
-            references.append(text)
-            if not array and (frame.function == "" or frame.function in ONE_VALUE):
-                text = intersect(text, row, column)
-            frame.pieces.append(text)
-        else:
-            frame.pieces.append(item.value)
-    if len(stack) != 1:
+        rewriting.take(item)
+    if len(rewriting.stack) != 1:
         raise CannotEvaluate("the brackets do not match")
-    return Rewritten("=" + "".join(stack[0].pieces), calls_ours, references)
-
-
-def _closed(frame: _Frame, sheet: str, context: Context) -> str:
-    """Text of a finished call or bracket, which its opening has begun."""
-    if not frame.ours:
-        return "".join(frame.pieces) + ")"
-    arguments = [*frame.arguments, "".join(frame.pieces)]
-    if len(arguments) == 1 and not arguments[0].strip():
-        return f"{frame.function}()"
-    return f"{frame.function}(" + ",".join(tagged(argument, sheet, context.extents) for argument in arguments) + ")"
-
-
-def _operand(value: str, sheet: str, row: int, column: int, context: Context) -> str:
-    """Text to put in for a reference."""
-    if _EXTERNAL.match(value):
-        raise CannotEvaluate("refers to another workbook")
-    if re.match(r"^'?[^'!\[\]]+:[^'!\[\]]+'?!", value):
-        raise CannotEvaluate("refers to several sheets as a stack")
-    if "[" in value and "!" not in value:
-        plain = expand(value, context.tables, sheet, row, column)
-        if plain is not None:
-            return plain
-    named = context.names.resolve(value, sheet)
-    if named is not None:
-        if "#REF!" in named:
-            return "#REF!"
-        if re.search(r"\[\d+\]", named):
-            raise CannotEvaluate("refers to another workbook")
-        if named.startswith("("):  # a formula behind a name: its own names and references are resolved as well
-            inner = rewrite("=" + named[1:-1], sheet, row, column, context, array=True)
-            return f"({inner.text[1:]})"
-        return named
-    return value.lstrip("@")
+    made = rewriting.made
+    made.text = "=" + "".join(rewriting.stack[0].pieces)
+    return made
