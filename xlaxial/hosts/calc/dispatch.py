@@ -1,36 +1,52 @@
-"""From a call of Calc to a worksheet function and back."""
-def dispatcher(config):
-    import time
-    def run(name, kinds, cell, document, args):
-        def t(f, n=20):
-            f(); 
-            s=time.perf_counter()
-            for _ in range(n): r=f()
-            return (time.perf_counter()-s)/n*1e6, r
-        out=[]
-        rg=args[0]
-        a=rg.getRangeAddress()
-        out.append(("addr", str(a), 0.0))
-        data=rg.getDataArray()
-        out.append(("data", repr(data[:6])[:600], t(rg.getDataArray)[0]))
-        out.append(("types", repr([type(x).__name__ for r in data[:6] for x in r])[:300], 0.0))
-        out.append(("getRangeAddress","",t(rg.getRangeAddress)[0]))
-        out.append(("sheetname",rg.getSpreadsheet().getName(),t(lambda: rg.getSpreadsheet().getName())[0]))
-        tt,r=t(lambda: rg.queryContentCells(2).getRangeAddresses()); out.append(("qDATE",repr([(x.StartColumn,x.StartRow,x.EndColumn,x.EndRow) for x in r])[:300],tt))
-        tt,r=t(lambda: rg.queryFormulaCells(1).getRangeAddresses()); out.append(("qFVAL",repr([(x.StartColumn,x.StartRow,x.EndColumn,x.EndRow) for x in r])[:300],tt))
-        tt,r=t(lambda: rg.queryFormulaCells(4).getRangeAddresses()); out.append(("qFERR",repr([(x.StartColumn,x.StartRow,x.EndColumn,x.EndRow) for x in r])[:300],tt))
-        tt,r=t(lambda: rg.getPropertyValue("NumberFormat")); out.append(("nf",repr(r),tt))
-        tt,r=t(lambda: rg.getCellRangeByPosition(0,0,0,a.EndRow-a.StartRow).getPropertyValue("NumberFormat")); out.append(("nfcol",repr(r),tt))
-        tt,r=t(lambda: document.NullDate); out.append(("nulldate",str(r.Year),tt))
-        tt,r=t(lambda: document.getNumberFormats().getByKey(36).Type); out.append(("type36",str(r),tt))
-        def used():
-            c=rg.getSpreadsheet().createCursor(); c.gotoEndOfUsedArea(False); return c.getRangeAddress().EndRow
-        tt,r=t(used); out.append(("used",str(r),tt))
-        for i in range(min(6,len(data))):
-            for j in range(min(6,len(data[0]))):
-                c=rg.getCellByPosition(j,i)
-                out.append((f"cell{i},{j}", f"{c.getType().value} err={c.getError()} nf={c.NumberFormat} type={document.getNumberFormats().getByKey(c.NumberFormat).Type} {c.getString()!r} {c.getFormula()!r}", t(lambda: rg.getCellByPosition(j,i).getError())[0]))
-        tt,r=t(lambda: [ (x.RangeAddressesAsString, x.NumberFormat) for x in rg.getUniqueCellFormatRanges()[0:0]] if False else rg.getCellFormatRanges().getCount()); out.append(("fmtranges",repr(r),tt))
-        out.append(("others", repr(args[1:]), 0.0))
-        return tuple(out)
+"""From a call of Calc to a worksheet function and back; it runs inside the office."""
+
+from __future__ import annotations
+
+import logging
+from collections.abc import Callable, Mapping
+from importlib import import_module
+from typing import Any
+
+from xlaxial.hosts.calc.ranges import read_range
+from xlaxial.hosts.calc.values import cell_out, cells_in, error_value, grid_out
+
+_LOG = logging.getLogger("xlaxial")
+
+Run = Callable[[str, tuple[str, ...], bool, Any, tuple[Any, ...]], Any]
+"""Takes a function's name, the kinds of its arguments, whether it gives one cell, the workbook and the arguments."""
+
+
+def dispatcher(config: Mapping[str, Any]) -> Run:
+    """Return what runs every call of an extension.
+
+    Parameters
+    ----------
+    config : mapping
+        The extension's `config.json`; ``caller`` names, as ``module:attribute``, what gives a function's callable.
+
+    Returns
+    -------
+    callable
+        It never raises; a fault is #VALUE!, its traceback goes to the log "xlaxial".
+    """
+    module, _, attribute = config["caller"].partition(":")
+    caller: Callable[[str], Callable[..., Any]] = getattr(import_module(module), attribute)
+
+    def run(name: str, kinds: tuple[str, ...], cell: bool, document: Any, arguments: tuple[Any, ...]) -> Any:
+        try:
+            given = [_argument(kind, value, document) for kind, value in zip(kinds, arguments, strict=False)]
+            result = caller(name)(*given)
+            return cell_out(result) if cell else grid_out(result)
+        except Exception:  # noqa: BLE001 - a fault must reach the cell as an error value, never as text or a crash
+            _LOG.exception("%s failed on its arguments", name)
+            return error_value("#VALUE!") if cell else ((error_value("#VALUE!"),),)
+
     return run
+
+
+def _argument(kind: str, value: Any, document: Any) -> Any:
+    if kind == "range":
+        return read_range(value, document)
+    if kind != "value" and type(value) is float and value == 0.0:
+        return None  # a single blank cell arrives as 0, which is no heading and no table
+    return cells_in(value)

@@ -49,9 +49,7 @@ def package_folders(packages: Iterable[str] = ("xlaxial", *REQUIRES)) -> tuple[s
     return tuple(dict.fromkeys(found))
 
 
-def write_extension(
-    folder: Path, functions: Sequence[Function], source: Source, identifier: str = IDENTIFIER
-) -> Path:
+def write_extension(folder: Path, functions: Sequence[Function], source: Source, identifier: str = IDENTIFIER) -> Path:
     """Write an extension into a folder, in place of what stood there.
 
     Parameters

@@ -20,6 +20,7 @@ _PLACES = (
     "C:/Program Files/LibreOffice/program",
 )
 _RECALCULATE_ALWAYS = "0"
+_PYTHON = ("PYTHONHOME", "PYTHONPATH", "PYTHONSTARTUP", "VIRTUAL_ENV")
 
 
 class OfficeError(Exception):
@@ -120,6 +121,20 @@ def command(office: Office, profile: Path, extensions: Path | None, *arguments: 
     return [*run, *arguments]
 
 
+def environment() -> dict[str, str]:
+    """Return the environment for the office: without a virtual environment of Python, which its own would take up.
+
+    An embedded Python looks for its libraries beside the first ``python3`` of the path; in an activated virtual
+    environment it finds none of the office's own modules there, and no component in Python loads.
+    """
+    kept = {name: value for name, value in os.environ.items() if name not in _PYTHON}
+    own = [Path(folder).resolve() for folder in (sys.prefix, os.environ.get("VIRTUAL_ENV")) if folder]
+    virtual = [folder for folder in own if (folder / "pyvenv.cfg").exists()]
+    places = kept.get("PATH", "").split(os.pathsep)
+    kept["PATH"] = os.pathsep.join(p for p in places if not any(Path(p).resolve().is_relative_to(v) for v in virtual))
+    return kept
+
+
 def convert(
     book: Path,
     outdir: Path,
@@ -170,7 +185,7 @@ def convert(
     result.unlink(missing_ok=True)
     run = command(office, profile, extensions, "--convert-to", to, "--outdir", str(outdir), str(book))
     try:
-        done = subprocess.run(run, capture_output=True, text=True, timeout=timeout, check=False)
+        done = subprocess.run(run, capture_output=True, text=True, timeout=timeout, check=False, env=environment())
     except subprocess.TimeoutExpired:
         raise OfficeError(f"LibreOffice took more than {timeout:g} s over {book}") from None
     if not result.exists():
