@@ -71,4 +71,8 @@ class LinearState:
     force_start: Floats  # (n_bars, n_cases) N at the bar's start, tension positive
     force_end: Floats  # (n_bars, n_cases) N at the bar's end, force_start - distributed * length
     reaction: Floats  # (n_supports, n_cases) N exerted on the member, towards +x
-    residual: Floats  # (n_members, n_cases) largest unbalanced nodal force over the largest |force| of the member
+    residual: Floats  # (n_members, n_cases) |sum of reactions and loads| over the largest |force| of the member
+    imbalance: (
+        Floats  # (n_members, n_cases) bound of the error of any force from what is out of balance at nodes, as above
+    )
+    elongation: Floats  # (n_bars, n_cases) m, displacement of the bar's end less that of its start

@@ -1,133 +1,218 @@
-"""Stiffness of a network, factorised: tridiagonal where members are chains, sparse elsewhere.
+"""Stiffness of a network, factorised: tridiagonal where members are chains, banded where narrow, sparse elsewhere.
 
-The pattern is found once; `factor` takes any stiffnesses, so that tangents of other laws can use it too.
+The pattern, the numbering and the split into routes are found once; `Assembly.factor` then takes any stiffnesses, so
+that tangents of other laws (zero among them) can use it again and again.
 """
 
 from __future__ import annotations
 
-from typing import Any
+from dataclasses import dataclass
+from typing import Protocol
 
 import numpy as np
-from scipy.linalg.lapack import dpttrf, dpttrs
 
 from xlaxial.arrays import Flags, Floats, Ints
 from xlaxial.model.network import Network
+from xlaxial.solver.banded import Banded
+from xlaxial.solver.layout import Layout
+from xlaxial.solver.sparse import Sparse
+from xlaxial.solver.tridiagonal import Tridiagonal
+
+_NARROW = 40  # half bandwidth up to which banded factors are taken
 
 
-class Incidence:
-    """Differences of nodal values along bars, and sums of bar forces at nodes; slices where the bars are one chain."""
+class Factors(Protocol):
+    """Factors of one matrix."""
 
-    def __init__(self, start: Ints, end: Ints, n_nodes: int) -> None:
-        self.start, self.end, self.n_nodes = start, end, n_nodes
-        n = start.size
-        self.single = n_nodes == n + 1 and n > 0 and int(start[0]) == 0 and bool((np.diff(start) == 1).all()) and bool(
-            (end - start == 1).all()
-        )
+    def factor(self, diagonal: Floats, coupling: Floats) -> int:
+        """Factorise; 0, or the number from 1 of a row whose pivot is not positive."""
 
-    def ends(self, values: Floats) -> tuple[Floats, Floats]:
-        """Return nodal values at the bars' starts and ends, (n_bars, ...)."""
-        if self.single:
-            return values[:-1], values[1:]
-        return values[self.start], values[self.end]
-
-    def pull(self, at_start: Floats, at_end: Floats) -> Floats:
-        """Return the force of the bars on the nodes, (n_nodes, n_cases), from their forces at both ends."""
-        if self.single:
-            out = np.empty((self.n_nodes, at_start.shape[1]))
-            out[:-1] = at_start
-            out[-1] = 0.0
-            out[1:] -= at_end
-            return out
-        return self.gather(self.start, at_start) - self.gather(self.end, at_end)
-
-    def gather(self, at: Ints, values: Floats) -> Floats:
-        """Return sums of values by node, (n_nodes, n_cases)."""
-        return sums(at, values, self.n_nodes)
+    def solve(self, rows: Floats) -> None:
+        """Solve in place, (n_cases, n) N to m."""
 
 
-def sums(at: Ints, values: Floats, size: int) -> Floats:
-    """Return sums of the rows of `values` by their place `at`, (size, n_cases)."""
-    out = np.empty((size, values.shape[1]))
-    for case in range(values.shape[1]):
-        out[:, case] = np.bincount(at, weights=values[:, case], minlength=size)
-    return out
+@dataclass(frozen=True)
+class _Block:
+    """Nodes and bars that are factorised together."""
+
+    nodes: Ints  # (n,) nodes of the network in the order of the matrix
+    bars: Ints  # (m,) bars of the network
+    factors: Factors
 
 
-class Stiffness:
-    """The assembled stiffness of a network, factorised for given bar and support stiffnesses."""
+class Assembly:
+    """The assembled stiffness of a network.
+
+    Parameters
+    ----------
+    network : Network
+        Its members are not joined with each other.
+    """
 
     def __init__(self, network: Network) -> None:
-        self._network = network
-        self.incidence = Incidence(network.bars.start, network.bars.end, network.n_nodes)
-        self.rigid = np.isinf(network.supports.stiffness)
-        self.fixed: Flags = np.zeros(network.n_nodes, dtype=bool)
-        self.fixed[network.supports.node[self.rigid]] = True
-        near = np.abs(network.bars.end - network.bars.start) == 1
-        self._chain = bool(near.all())
-        self._factors: Any = None
+        self.network = network
+        self.layout = Layout(network)
+        self.fixed: Flags = np.zeros(network.n_nodes, dtype=bool)  # (n_nodes,) held by a rigid support
+        self.links: Floats = np.zeros(0)  # (n_links,) N/m, stiffness of the layout's links
+        self._whole = Tridiagonal()
+        self._blocks = [] if self.layout.chain else _blocks(network)
 
-    def factor(self, bar: Floats, support: Floats) -> None:
-        """Factorise for bar stiffnesses (n_bars,) N/m and support stiffnesses (n_supports,) N/m (rigid: passed over)."""
-        network, n = self._network, self._network.n_nodes
-        start, end = network.bars.start, network.bars.end
-        elastic = ~self.rigid
-        diagonal = np.zeros(n)  # bincount of nothing would be an array of integers
-        diagonal += np.bincount(network.supports.node[elastic], weights=support[elastic], minlength=n)
-        if self.incidence.single:
-            diagonal[:-1] += bar
-            diagonal[1:] += bar
+    def factor(self, bar: Floats, support: Floats) -> Flags:
+        """Factorise.
+
+        Parameters
+        ----------
+        bar : Floats
+            (n_bars,) N/m, none below zero.
+        support : Floats
+            (n_supports,) N/m, inf where rigid: the displacement of its node is then prescribed.
+
+        Returns
+        -------
+        Flags
+            (n_members,) members that could not be factorised (a mechanism, or stiffnesses too far apart); they stand
+            in the factors as if every node of theirs were held.
+        """
+        network = self.network
+        failed: Flags = np.zeros(network.n_members, dtype=bool)
+        node = self._factor(bar, support, failed)
+        if node < 0:
+            return failed
+        spread = _spread(network, bar, support)
+        while node >= 0:
+            member = network.node_member[node]
+            failed |= spread >= spread[member]
+            failed[member] = True
+            node = self._factor(bar, support, failed)
+        return failed
+
+    def _factor(self, bar: Floats, support: Floats, left_out: Flags) -> int:
+        """Factorise all but some members; -1, or a node of a member that fails."""
+        network, layout, n = self.network, self.layout, self.network.n_nodes
+        rigid = support == np.inf
+        some = bool(rigid.any())
+        node, spring = (network.supports.node[~rigid], support[~rigid]) if some else (network.supports.node, support)
+        diagonal: Floats = np.zeros(n)
+        if node.size:
+            diagonal += np.bincount(node, weights=spring, minlength=n)
+        self.links = layout.to_links(bar)
+        if layout.chain:
+            diagonal[:-1] += self.links
+            diagonal[1:] += self.links
         else:
-            diagonal += np.bincount(start, weights=bar, minlength=n)
-            diagonal += np.bincount(end, weights=bar, minlength=n)
-        diagonal[self.fixed] = 1.0
-        if self._chain:
-            if self.incidence.single:
-                beside = -bar
-            else:
-                beside = -np.bincount(np.minimum(start, end), weights=bar, minlength=n)[: n - 1]
-            if n > 1:
-                at = np.flatnonzero(self.fixed)
-                beside[at[at < n - 1]] = 0.0
-                beside[at[at > 0] - 1] = 0.0
-                d, e, info = dpttrf(diagonal, beside, overwrite_d=1, overwrite_e=1)
-                if info == 0:
-                    self._factors = (d, e)
-                    return
-            else:
-                self._factors = (diagonal, beside)
-                return
-            diagonal = self._diagonal_again(bar, support)
-        self._factors = self._sparse(bar, diagonal)
-
-    def _diagonal_again(self, bar: Floats, support: Floats) -> Floats:
-        """Return the diagonal once more, where a factorisation that failed has overwritten it."""
-        network, n = self._network, self._network.n_nodes
-        elastic = ~self.rigid
-        out = np.zeros(n)
-        out += np.bincount(network.supports.node[elastic], weights=support[elastic], minlength=n)
-        out += np.bincount(network.bars.start, weights=bar, minlength=n)
-        out += np.bincount(network.bars.end, weights=bar, minlength=n)
-        out[self.fixed] = 1.0
-        return out
-
-    def _sparse(self, bar: Floats, diagonal: Floats) -> Any:
-        from scipy.sparse import coo_array
-        from scipy.sparse.linalg import splu
-
-        n = self._network.n_nodes
-        start, end = self._network.bars.start, self._network.bars.end
-        free = ~(self.fixed[start] | self.fixed[end])
-        i = np.concatenate([np.arange(n), start[free], end[free]])
-        j = np.concatenate([np.arange(n), end[free], start[free]])
-        v = np.concatenate([diagonal, -bar[free], -bar[free]])
-        matrix = coo_array((v, (i, j)), shape=(n, n)).tocsc()
-        return splu(matrix, permc_spec="MMD_AT_PLUS_A", diag_pivot_thresh=0.0, options={"SymmetricMode": True})
+            diagonal += np.bincount(network.bars.start, weights=bar, minlength=n)
+            diagonal += np.bincount(network.bars.end, weights=bar, minlength=n)
+        held = network.supports.node[rigid]
+        self.fixed = np.zeros(n, dtype=bool)
+        self.fixed[held] = True
+        if left_out.any():
+            self.fixed |= left_out[network.node_member]
+            held = np.flatnonzero(self.fixed)
+        diagonal[held] = 1.0
+        if layout.chain:
+            coupling = -self.links
+            coupling[held[held < n - 1]] = 0.0
+            coupling[held[held > 0] - 1] = 0.0
+            return self._whole.factor(diagonal, coupling) - 1
+        apart = self.fixed[network.bars.start] | self.fixed[network.bars.end]
+        coupling = np.where(apart, 0.0, -bar)
+        for block in self._blocks:
+            row = block.factors.factor(diagonal[block.nodes], coupling[block.bars])
+            if row:
+                return int(block.nodes[row - 1])
+        return -1
 
     def solve(self, force: Floats) -> Floats:
-        """Return displacements (n_nodes, n_cases) m under nodal forces; those of rigid nodes are the force's entries."""
-        if isinstance(self._factors, tuple):
-            if self._network.n_nodes == 1:
-                return force / self._factors[0][:, None]
-            return dpttrs(*self._factors, force)[0]
-        out: Floats = self._factors.solve(np.ascontiguousarray(force))
-        return out
+        """Return displacements (n_nodes, n_cases) m under forces (n_nodes, n_cases) N; held nodes return the force."""
+        rows = force.T.copy()
+        self.solve_rows(rows)
+        return rows.T
+
+    def solve_rows(self, rows: Floats) -> None:
+        """Solve in place with a case per row, contiguous, (n_cases, n_nodes)."""
+        if self.layout.chain:
+            self._whole.solve(rows)
+            return
+        for block in self._blocks:
+            part = rows.take(block.nodes, axis=1)
+            block.factors.solve(part)
+            rows[:, block.nodes] = part
+
+
+def _spread(network: Network, bar: Floats, support: Floats) -> Floats:
+    """Ratio of the largest to the least stiffness of each member, (n_members,)."""
+    most, least = np.zeros(network.n_members), np.full(network.n_members, np.inf)
+    for at, values in ((network.bars.member, bar), (network.node_member[network.supports.node], support)):
+        there = np.isfinite(values) & (values > 0.0)
+        np.maximum.at(most, at[there], values[there])
+        np.minimum.at(least, at[there], values[there])
+    ratio: Floats = most / least
+    return ratio
+
+
+def _blocks(network: Network) -> list[_Block]:
+    """Split a network into what is tridiagonal as numbered, what is so or narrow once renumbered, and the rest."""
+    start, end, member = network.bars.start, network.bars.end, network.bars.member
+    far = np.zeros(network.n_members, dtype=bool)
+    far[member[np.abs(end - start) != 1]] = True
+    blocks = []
+    place = np.zeros(network.n_nodes, dtype=np.int64)
+    if not far.all():
+        nodes = np.flatnonzero(~far[network.node_member])
+        blocks.append(_block(network, nodes, np.flatnonzero(~far[member]), place))
+    if not far.any():
+        return blocks
+    order = _renumbered(network, far)
+    place[order] = np.arange(order.size)
+    reach = np.zeros(network.n_members, dtype=np.int64)
+    np.maximum.at(reach, member, np.where(far[member], np.abs(place[end] - place[start]), 0))
+    for low, high in ((1, 1), (2, _NARROW), (_NARROW + 1, network.n_nodes)):
+        chosen = far & (reach >= low) & (reach <= high)
+        if chosen.any():
+            nodes = order[chosen[network.node_member[order]]]
+            blocks.append(_block(network, nodes, np.flatnonzero(chosen[member]), place))
+    return blocks
+
+
+def _renumbered(network: Network, chosen: Flags) -> Ints:
+    """Nodes of some members, piece by piece, in reverse Cuthill-McKee order, which brings neighbours together."""
+    from scipy.sparse import csr_array
+    from scipy.sparse.csgraph import reverse_cuthill_mckee
+
+    nodes = np.flatnonzero(chosen[network.node_member])
+    local = np.zeros(network.n_nodes, dtype=np.int64)
+    local[nodes] = np.arange(nodes.size)
+    bars = chosen[network.bars.member]
+    i, j = local[network.bars.start[bars]], local[network.bars.end[bars]]
+    ones = np.ones(2 * i.size, dtype=np.int8)
+    graph = csr_array((ones, (np.append(i, j), np.append(j, i))), shape=(nodes.size, nodes.size))
+    order: Ints = nodes[reverse_cuthill_mckee(graph, symmetric_mode=True)]
+    return order
+
+
+def _block(network: Network, nodes: Ints, bars: Ints, place: Ints) -> _Block:
+    """Choose the factors by how far the bars reach in the order of the nodes; `place` is scratch."""
+    place[nodes] = np.arange(nodes.size)
+    i, j = place[network.bars.start[bars]], place[network.bars.end[bars]]
+    reach = int(np.abs(i - j).max(initial=1))
+    factors: Factors
+    if reach == 1:
+        factors = _Beside(np.minimum(i, j))
+    elif reach <= _NARROW:
+        factors = Banded(i, j, reach)
+    else:
+        factors = Sparse(i, j, nodes.size)
+    return _Block(nodes, bars, factors)
+
+
+class _Beside(Tridiagonal):
+    """Tridiagonal factors from bars in any order, several between neighbours among them."""
+
+    def __init__(self, at: Ints) -> None:
+        super().__init__()
+        self._at = at
+
+    def factor(self, diagonal: Floats, coupling: Floats) -> int:
+        """Factorise, (n,) N/m and (n_bars,) N/m."""
+        size = max(diagonal.size - 1, 0)
+        return super().factor(diagonal, np.bincount(self._at, weights=coupling, minlength=size) + np.zeros(size))

@@ -2,178 +2,233 @@
 
 from __future__ import annotations
 
+from dataclasses import dataclass
+from typing import Protocol
+
 import numpy as np
 
-from xlaxial.arrays import Floats, Ints
+from xlaxial.arrays import Flags, Floats, Ints
 from xlaxial.model.network import Actions, LinearState, Network
-from xlaxial.solver.assembly import Incidence, Stiffness, sums
+from xlaxial.solver.assembly import Assembly
+from xlaxial.solver.balance import Balance, Equations
+from xlaxial.solver.dominant import MOST_NODES, Dominant
 from xlaxial.solver.flexibility import flexibility, load_lever
+from xlaxial.solver.layout import in_rows
 
-TRUSTED = 1e-11  # forces out of balance, relative to the member's largest, up to which a state is taken
-_ROUNDS = 12  # refinements at most; each gains the digits that the factorisation holds
-_DEAD = 1e-300  # below any force that means something
+TRUSTED = 1e-11  # bound of the error of any force, relative to its member's largest, up to which no more is done
+_TOLERATED = 1e-10  # bound up to which factors free of subtractions are not called in
+_REFUSED = 1e-6  # a member with a larger bound gets nan for every result
+_ROUNDS = 8  # refinements at most; each gains the digits that the factors hold
+_CHUNK = 16384  # entries that are worked on at a time where much is done to each
 
 
-def solve_linear(network: Network, actions: Actions, preload: Floats | None = None) -> LinearState:
+def solve_linear(
+    network: Network, actions: Actions, preload: Floats | None = None, assembly: Assembly | None = None
+) -> LinearState:
     """Solve a network whose bars and supports are linear.
 
-    The stiffness is assembled and factorised once for all cases. Forces are then formed bar by bar from the
-    displacements and put into equilibrium; what is out of balance is solved for again, with displacements kept as
-    sums of two doubles and differences free of rounding, until it is small against the member's largest force. The
-    stiffness matrix is a diagonally dominant M-matrix, so that no bar force is wrong by more than the sum of the
-    forces out of balance: bars 1e12 times stiffer than their neighbours keep their digits.
+    The stiffness is assembled and factorised once for all cases. Forces are formed bar by bar from the displacements
+    and put into equilibrium. Where what is out of balance could falsify any force of a member by more than `TRUSTED`
+    of its largest, it is solved for again, with displacements kept as sums of two doubles and differences free of
+    rounding (iterative refinement; Higham, Accuracy and Stability of Numerical Algorithms, chapter 12), so that
+    bars 1e12 times stiffer than their neighbours keep their digits. Members that do not settle are factorised anew
+    without subtractions, which holds at any stiffness ratio.
 
     Parameters
     ----------
     network : Network
-        Every connected piece must be held (see `xlaxial.solver.connectivity.diagnose`).
+        Every connected piece must be held (see `xlaxial.solver.connectivity.diagnose`); at most one rigid support
+        stands at a node.
     actions : Actions
         One column per load case.
     preload : Floats, optional
-        (n_bars, n_cases) m, further free lengthening that stands for preload.
+        (n_bars, n_cases) m, further free lengthening that stands for preload (see `xlaxial.solver.lockoff.lock_off`).
+    assembly : Assembly, optional
+        Of the same network, to be used again.
 
     Returns
     -------
     LinearState
-        Its residual is not below `TRUSTED` where refinement could not reach it.
+        All nan in members with numbers that are not finite, bars without stiffness, or forces that cannot be told.
     """
-    bars, supports = network.bars, network.supports
-    flex = flexibility(bars)
-    imposed = actions.imposed if preload is None else actions.imposed + preload
-    loaded = bool(actions.distributed.any())
-    lever = load_lever(bars) if loaded else None
-    free = imposed if lever is None else imposed - actions.distributed * lever[:, None]
-    span = actions.distributed * bars.length[:, None]
-    stiffness = Stiffness(network)
-    bar = 1.0 / flex
-    spring = np.where(stiffness.rigid, 0.0, supports.stiffness)
-    stiffness.factor(bar, spring)
-    balance = _Balance(network, stiffness, bar, spring, free, span, actions)
-    u = np.zeros((network.n_nodes, actions.force.shape[1]))
-    u[supports.node[stiffness.rigid]] = actions.settlement[stiffness.rigid]
+    equations = _equations(network, actions, preload)
+    found = _solve(equations, assembly) if network.n_nodes else _Found.empty(equations)
+    return LinearState(
+        found.displacement.T,
+        found.start.T,
+        found.end.T,
+        found.reaction.T,
+        found.residual.T,
+        found.imbalance.T,
+        found.elongation.T,
+    )
+
+
+class _Solver(Protocol):
+    def solve_rows(self, rows: Floats) -> None:
+        """Solve in place, (n_cases, n_nodes) N to m."""
+
+
+@dataclass
+class _Found:
+    """Results, a case per row."""
+
+    displacement: Floats  # (n_cases, n_nodes) m
+    start: Floats  # (n_cases, n_bars) N
+    end: Floats  # (n_cases, n_bars) N
+    elongation: Floats  # (n_cases, n_bars) m
+    reaction: Floats  # (n_cases, n_supports) N
+    residual: Floats  # (n_cases, n_members)
+    imbalance: Floats  # (n_cases, n_members)
+
+    @classmethod
+    def empty(cls, equations: Equations) -> _Found:
+        """All nan."""
+        network, cases = equations.network, equations.force.shape[0]
+        bars, members = network.bars.start.size, network.n_members
+        sizes = (network.n_nodes, bars, bars, bars, network.supports.node.size, members, members)
+        return cls(*(np.full((cases, size), np.nan) for size in sizes))
+
+    def put(self, other: _Found, nodes: Ints, bars: Ints, supports: Ints, members: Ints) -> None:
+        """Take over the results of some members."""
+        self.displacement[:, nodes] = other.displacement
+        self.start[:, bars], self.end[:, bars] = other.start, other.end
+        self.elongation[:, bars] = other.elongation
+        self.reaction[:, supports] = other.reaction
+        self.residual[:, members], self.imbalance[:, members] = other.residual, other.imbalance
+
+
+def _equations(network: Network, actions: Actions, preload: Floats | None) -> Equations:
+    """Put actions in rows, loads along bars turned into their free lengthening and end loads."""
+    bars = network.bars
+    bar = flexibility(bars)
+    np.divide(1.0, bar, out=bar)
+    free = in_rows(actions.imposed)
+    if preload is not None and preload.any():
+        free = free + preload.T
+    span = None
+    if actions.distributed.any():
+        q = in_rows(actions.distributed)
+        free = free - q * load_lever(bars)
+        span = q * bars.length
+    return Equations(
+        network,
+        bar,
+        free if free.any() else None,
+        span,
+        in_rows(actions.force),
+        in_rows(actions.settlement) if actions.settlement.any() else None,
+    )
+
+
+def _solve(equations: Equations, assembly: Assembly | None = None) -> _Found:
+    """Solve all members; those that need more are solved again by themselves."""
+    network = equations.network
+    finite = equations.finite()
+    if finite is not None:
+        return _put_together(equations, _Found.empty(equations), finite)
+    if assembly is None:
+        assembly = Assembly(network)
+    failed = assembly.factor(equations.bar, network.supports.stiffness)
+    if failed.any():
+        return _alone(equations, _put_together(equations, _Found.empty(equations), ~failed), failed)
+    balance = Balance(equations, assembly.layout, assembly.links)
+    u, out = _first(equations, balance, assembly)
+    bound = balance.measure(out, TRUSTED)
+    poor = _poor(bound, TRUSTED)
+    if not poor.any():
+        return _found(balance, u, None, bound)
+    if 2 * np.count_nonzero(poor) < poor.size:
+        return _put_together(equations, _found(balance, u, None, bound), poor)
+    low, bound = _refine(balance, assembly, u, out)
+    found = _found(balance, u, low, bound)
+    poor = _poor(bound, _TOLERATED)
+    return _alone(equations, found, poor) if poor.any() else found
+
+
+def _poor(bound: Floats, enough: float) -> Flags:
+    """Members that are not good enough in every case, (n_members,)."""
+    return np.logical_not((bound <= enough).all(axis=0))
+
+
+def _first(equations: Equations, balance: Balance, solver: _Solver) -> tuple[Floats, Floats]:
+    """Displacements as the factors give them, and what is then out of balance."""
+    network = equations.network
+    u = np.zeros_like(equations.force)
+    if equations.settlement is not None:
+        rigid = network.supports.stiffness == np.inf
+        u[:, network.supports.node[rigid]] = equations.settlement[:, rigid]
+    settled = u if equations.settlement is not None else None
+    u = balance.check(u)
+    solver.solve_rows(u)
+    if settled is not None:
+        u += settled
+    return u, balance.check(u)
+
+
+def _refine(balance: Balance, solver: _Solver, u: Floats, out: Floats) -> tuple[Floats, Floats]:
+    """Refine u in place; return what it lacks to a sum of two doubles, and the bound of the error of any force."""
     low = np.zeros_like(u)
-    out_of_balance = balance.check(u, None)
     worst = np.inf
-    for round_ in range(_ROUNDS):
-        u, low = _add(u, low, stiffness.solve(out_of_balance)) if round_ else (u + stiffness.solve(out_of_balance), low)
-        out_of_balance = balance.check(u, low if round_ else None)
-        error = balance.error(out_of_balance)
-        if not error > TRUSTED or (round_ > 2 and error > 0.5 * worst):
+    for _ in range(_ROUNDS):
+        solver.solve_rows(out)
+        _add(u, low, out)
+        out = balance.check(u, low)
+        bound = balance.measure(out, TRUSTED, u)
+        now = float(bound.max(initial=0.0))
+        if now <= TRUSTED or not now < 0.25 * worst:
             break
-        worst = error
-        if not round_:
-            out_of_balance = balance.check(u, low)
-    return balance.state(u + low)
+        worst = now
+    return low, bound
 
 
-class _Balance:
-    """Forces of a displacement state, and what is out of balance at its nodes."""
-
-    def __init__(
-        self,
-        network: Network,
-        stiffness: Stiffness,
-        bar: Floats,
-        spring: Floats,
-        free: Floats,
-        span: Floats,
-        actions: Actions,
-    ) -> None:
-        self._network, self._stiffness = network, stiffness
-        self._bar, self._spring = bar[:, None], spring[:, None]
-        self._free, self._span, self._actions = free, span, actions
-        self._loaded = bool(span.any())
-        self._fixed = np.flatnonzero(stiffness.fixed)
-        self._node, self._rigid = network.supports.node, np.flatnonzero(stiffness.rigid)
-        self.start = self.end = self.reaction = self.pull = np.zeros((0, 0))
-
-    def check(self, u: Floats, low: Floats | None) -> Floats:
-        """Form all forces of the state u (+ low, then without rounding) and return what is out of balance."""
-        incidence: Incidence = self._stiffness.incidence
-        left, right = incidence.ends(u)
-        if low is None:
-            stretch = right - left
-            stretch -= self._free
-        else:
-            low_left, low_right = incidence.ends(low)
-            stretch, lost = _difference(right, left)
-            stretch, lost_too = _difference(stretch, self._free)
-            stretch += lost + lost_too + (low_right - low_left)
-        stretch *= self._bar
-        self.start = stretch
-        self.end = stretch - self._span if self._loaded else stretch
-        pull = incidence.pull(self.start, self.end)
-        pull += self._actions.force
-        moved = u[self._node] - self._actions.settlement
-        if low is not None:
-            moved += low[self._node]
-        self.reaction = -self._spring * moved
-        pull += incidence.gather(self._node, self.reaction)
-        self.reaction[self._rigid] = -pull[self._node[self._rigid]]
-        pull[self._fixed] = 0.0
-        return pull
-
-    def largest(self) -> Floats:
-        """Largest |force| of each member and case, (n_members, n_cases)."""
-        network = self._network
-        out = np.full((network.n_members, self.start.shape[1]), _DEAD)
-        _raise_to(out, network.bars.member, np.maximum(np.abs(self.start), np.abs(self.end)))
-        _raise_to(out, network.node_member[self._node], np.abs(self.reaction))
-        return out
-
-    def error(self, out_of_balance: Floats) -> float:
-        """Bound of the relative error of any force, the worst of all members and cases."""
-        network = self._network
-        chain = self._stiffness.incidence.single
-        if chain:  # along one chain the corrections are the partial sums of what is out of balance
-            partial = np.cumsum(out_of_balance, axis=0)
-            bound = (np.maximum(partial.max(axis=0), 0.0) - np.minimum(partial.min(axis=0), 0.0))[None, :]
-        else:
-            bound = sums(network.node_member, np.abs(out_of_balance), network.n_members)
-        return float(np.max(bound / self.largest(), initial=0.0))
-
-    def state(self, u: Floats) -> LinearState:
-        """Return the state with its residual: nodal forces out of balance and the sum of all forces on the member."""
-        network = self._network
-        largest = self.largest()
-        own = network.node_member[self._node]
-        total = sums(own, self.reaction, network.n_members) + sums(
-            network.node_member, self._actions.force, network.n_members
-        )
-        if self._loaded:
-            total += sums(network.bars.member, self._span, network.n_members)
-        scale = largest
-        if self._loaded or self._actions.force.any():
-            scale = largest + sums(network.node_member, np.abs(self._actions.force), network.n_members)
-        return LinearState(u, self.start, self.end, self.reaction, np.abs(total) / scale)
+def _add(high: Floats, low: Floats, more: Floats) -> None:
+    """Add to a sum of two doubles in place (Knuth, TAOCP vol. 2, 4.2.2, theorem B)."""
+    for h, w, m in zip(high, low, more, strict=True):
+        for a in range(0, h.size, _CHUNK):
+            own, add = h[a : a + _CHUNK], m[a : a + _CHUNK]
+            total = own + add
+            back = total - own
+            add -= back
+            own -= total - back
+            own += add
+            w[a : a + _CHUNK] += own
+            h[a : a + _CHUNK] = total
 
 
-def _raise_to(out: Floats, at: Ints, values: Floats) -> None:
-    """Raise the rows of `out` to the largest of the values at them; `at` may be in order (then it is quick)."""
-    if not at.size:
-        return
-    if out.shape[0] == 1:
-        np.maximum(out[0], values.max(axis=0), out=out[0])
-        return
-    steps = np.flatnonzero(np.diff(at))
-    if steps.size + 1 <= out.shape[0] and bool((np.diff(at[np.append(0, steps + 1)]) > 0).all()):
-        first = np.append(0, steps + 1)
-        rows = at[first]
-        out[rows] = np.maximum(out[rows], np.maximum.reduceat(values, first, axis=0))
-        return
-    np.maximum.at(out, at, values)
+def _put_together(equations: Equations, found: _Found, members: Flags) -> _Found:
+    """Solve some members by themselves and put their results among the others."""
+    if members.any():
+        part, nodes, bars, supports = equations.part(members)
+        found.put(_solve(part), nodes, bars, supports, np.flatnonzero(members))
+    return found
 
 
-def _difference(a: Floats, b: Floats) -> tuple[Floats, Floats]:
-    """Return a - b rounded, and exactly what rounding lost (error-free transformation, Knuth, TAOCP vol. 2, 4.2.2)."""
-    s = a - b
-    bb = a - s
-    return s, (a - (s + bb)) + (bb - b)
+def _alone(equations: Equations, found: _Found, members: Flags) -> _Found:
+    """Solve members one by one without subtractions; nan where even so the forces cannot be told."""
+    for member in np.flatnonzero(members).tolist():
+        part, nodes, bars, supports = equations.part(np.arange(members.size) == member)
+        own = part.network
+        result = _Found.empty(part)
+        if own.n_nodes <= MOST_NODES:
+            solver = Dominant(own, part.bar, own.supports.stiffness)
+            assembly = Assembly(own)
+            balance = Balance(part, assembly.layout, assembly.layout.to_links(part.bar))
+            u, out = _first(part, balance, solver)
+            low, bound = _refine(balance, solver, u, out)
+            if (bound <= _REFUSED).all():
+                result = _found(balance, u, low, bound)
+        found.put(result, nodes, bars, supports, np.array([member]))
+    return found
 
 
-def _add(high: Floats, low: Floats, more: Floats) -> tuple[Floats, Floats]:
-    """Add to a sum of two doubles."""
-    s = high + more
-    bb = s - high
-    lost = (high - (s - bb)) + (more - bb)
-    return s, low + lost
+def _found(balance: Balance, u: Floats, low: Floats | None, bound: Floats) -> _Found:
+    """Results of a state that has been checked last."""
+    layout = balance.layout
+    rise = layout.rise(u)
+    if low is not None:
+        rise += layout.rise(low)
+        u += low
+    start = layout.to_bars(balance.start)
+    end = start if balance.end is balance.start else layout.to_bars(balance.end)
+    return _Found(u, start, end, layout.to_bars(rise), balance.reaction, balance.overall(), bound)

@@ -2,23 +2,32 @@
 
 For a bar with modulus E and area A(x), of force N(x) = N_start - q x and free lengthening e0, the elongation is
 ``e = f N_start - q g + e0`` with ``f = int dx/(E A)`` and ``g = int x dx/(E A)``. Closed forms by elementary
-integration, for an area that varies linearly and for a round bar whose diameter does.
+integration, for an area that varies linearly (f = L ln(A2/A1) / (E (A2 - A1))) and for a round bar whose diameter
+does (f = L / (E sqrt(A1 A2))).
+
+Both logarithmic forms lose digits where the two ends are nearly alike. With z = (a2 - a1)/(a2 + a1), a the area or
+the diameter, ln(a2/a1) = 2 artanh z, and the terms that cancel are struck out of the series of artanh.
 """
 
 from __future__ import annotations
 
 import numpy as np
 
-from xlaxial.arrays import Flags, Floats
+from xlaxial.arrays import Flags, Floats, Ints
 from xlaxial.model.network import Bars
 
-_NEAR = 0.3  # below this relative taper the series is used: the closed forms lose digits there
-_TERMS = 34  # 0.3 ** 34 is below the last digit
+_NEAR = 0.5  # |z| up to which the series is used; beyond, the closed forms lose less than their last digit but one
+_TERMS = 27  # 0.5 ** 54 is below the last digit
 
 
 def flexibility(bars: Bars) -> Floats:
     """Return the flexibility of each bar, (n_bars,) m/N."""
-    return integrals(bars, bars.length, bars.area_end)[0]
+    tapered = _tapered(bars, bars.area_end)
+    out = bars.modulus * bars.area_start
+    np.divide(bars.length, out, out=out)
+    if tapered.size:
+        out[tapered] *= _means(bars.area_start[tapered], bars.area_end[tapered], bars.round_taper[tapered])[0]
+    return out
 
 
 def load_lever(bars: Bars) -> Floats:
@@ -45,39 +54,12 @@ def integrals(bars: Bars, x: Floats, area: Floats) -> tuple[Floats, Floats]:
     """
     first = x / (bars.modulus * bars.area_start)
     second = 0.5 * x * first
-    tapered = area != bars.area_start
-    if tapered.any():
-        at = np.flatnonzero(tapered)
-        round_ = bars.round_taper[at]
-        ratio = area[at] / bars.area_start[at]
-        ratio = np.where(round_, np.sqrt(ratio), ratio)
-        t = (area[at] - bars.area_start[at]) / bars.area_start[at]
-        t = np.where(round_, t / (1.0 + ratio), t)  # root of (1 + t) less 1, without cancellation
-        second[at] = x[at] * first[at] * _second(t, round_)
-        first[at] *= _first(t, round_)
+    tapered = _tapered(bars, area)
+    if tapered.size:
+        means = _means(bars.area_start[tapered], area[tapered], bars.round_taper[tapered])
+        second[tapered] = x[tapered] * first[tapered] * means[1]
+        first[tapered] *= means[0]
     return first, second
-
-
-def _first(t: Floats, round_: Flags) -> Floats:
-    """Mean of A_start/A over the length, t the relative growth of area or diameter."""
-    return np.where(round_, 1.0 / (1.0 + t), np.log1p(t) / t)
-
-
-def _second(t: Floats, round_: Flags) -> Floats:
-    """Mean of (x/L) A_start/A over the length."""
-    near = np.abs(t) < _NEAR
-    powers = np.arange(_TERMS)
-    signs = np.where(powers % 2, -1.0, 1.0)
-    small = np.where(near, t, 0.0)
-    linear = np.polynomial.polynomial.polyval(small, signs / (powers + 2))
-    rounded = np.polynomial.polynomial.polyval(small, signs * (powers + 1) / (powers + 2))
-    wide = np.where(near, 1.0, t)
-    log = np.log1p(wide)
-    return np.where(
-        near,
-        np.where(round_, rounded, linear),
-        np.where(round_, log - wide / (1.0 + wide), wide - log) / wide**2,
-    )
 
 
 def area_at(bars: Bars, x: Floats) -> Floats:
@@ -91,3 +73,49 @@ def area_at(bars: Bars, x: Floats) -> Floats:
     area = np.where(bars.round_taper, root**2, linear)
     area = np.where(part == 1.0, bars.area_end, area)
     return np.where(uniform | (part == 0.0), bars.area_start, area)
+
+
+def some_bars(bars: Bars, at: Ints) -> Bars:
+    """Return some of the bars, in the order of `at`."""
+    return Bars(**{name: getattr(bars, name)[at] for name in Bars.__dataclass_fields__})
+
+
+def _tapered(bars: Bars, area: Floats) -> Ints:
+    """Bars whose area differs from that at their start."""
+    if area is bars.area_start:
+        return np.zeros(0, dtype=np.int64)
+    return np.flatnonzero(area != bars.area_start)
+
+
+def _means(start: Floats, end: Floats, round_: Flags) -> tuple[Floats, Floats]:
+    """Means over the length of A_start/A and of (x/L) A_start/A, (n,) each.
+
+    With t = end/start - 1 of area or diameter: linear ln(1 + t)/t and (t - ln(1 + t))/t**2; round 1/(1 + t) and
+    (ln(1 + t) - t/(1 + t))/t**2.
+    """
+    apart = np.sqrt(start) + np.sqrt(end)
+    z = np.where(round_, (end - start) / apart**2, (end - start) / (end + start))
+    near = np.abs(z) <= _NEAR
+    z = np.where(near, z, 0.0)
+    rest = _artanh_rest(z)  # artanh z = z + z**3 rest
+    half = 0.5 * (1.0 - z)
+    first_near = (1.0 - z) * (1.0 + z * z * rest)
+    second_near = np.where(round_, half * (1.0 - z) * (1.0 / (1.0 + z) + z * rest), half * (1.0 - (1.0 - z) * z * rest))
+    ratio = np.where(near, 2.0, end / start)
+    log = np.log(ratio)
+    ratio = np.where(round_, np.sqrt(ratio), ratio)
+    log = np.where(round_, 0.5 * log, log)
+    t = ratio - 1.0
+    first = np.where(round_, np.sqrt(start / end), np.where(near, first_near, log / t))
+    second_far = np.where(round_, log - t / ratio, t - log) / t**2
+    return first, np.where(near, second_near, second_far)
+
+
+def _artanh_rest(z: Floats) -> Floats:
+    """Sum of z**(2 j) / (2 j + 3)."""
+    square = z * z
+    out = np.zeros_like(z)
+    for j in range(_TERMS - 1, -1, -1):
+        out *= square
+        out += 1.0 / (2 * j + 3)
+    return out

@@ -5,8 +5,8 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from xlaxial.arrays import Floats, Ints
-from xlaxial.model.network import Actions, Bars, LinearState, Network
-from xlaxial.solver.flexibility import area_at, integrals
+from xlaxial.model.network import Actions, LinearState, Network
+from xlaxial.solver.flexibility import area_at, integrals, some_bars
 
 
 @dataclass(frozen=True)
@@ -22,7 +22,7 @@ def at_stations(
     network: Network, actions: Actions, state: LinearState, preload: Floats, bar: Ints, x: Floats, case: int = 0
 ) -> Stations:
     """Return results at (n,) places: the bar and the distance x (m) from its start of each."""
-    some = Bars(**{name: getattr(network.bars, name)[bar] for name in Bars.__dataclass_fields__})
+    some = some_bars(network.bars, bar)
     area = area_at(some, x)
     first, second = integrals(some, x, area)
     force, load = state.force_start[bar, case], actions.distributed[bar, case]
