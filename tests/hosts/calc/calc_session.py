@@ -23,10 +23,18 @@ def connect(pipe: str) -> Any:
             time.sleep(0.2)
 
 
-def hidden() -> Any:
+def named(name: str, content: Any) -> Any:
     value = uno.createUnoStruct("com.sun.star.beans.PropertyValue")
-    value.Name, value.Value = "Hidden", True
+    value.Name, value.Value = name, content
     return value
+
+
+def type_into(context: Any, document: Any, cell: str, text: str) -> None:
+    """Enter a text as a person types it: the program then chooses the number format."""
+    helper = context.ServiceManager.createInstanceWithContext("com.sun.star.frame.DispatchHelper", context)
+    frame = document.getCurrentController().getFrame()
+    helper.executeDispatch(frame, ".uno:GoToCell", "", 0, (named("ToPoint", cell),))
+    helper.executeDispatch(frame, ".uno:EnterString", "", 0, (named("StringName", text),))
 
 
 def shown(cell: Any) -> Any:
@@ -39,7 +47,7 @@ def shown(cell: Any) -> Any:
     return {"VALUE": cell.getValue, "EMPTY": lambda: None}.get(kind, cell.getString)()
 
 
-def step(document: Any, order: list[Any]) -> Any:
+def step(context: Any, document: Any, order: list[Any]) -> Any:
     what, *rest = order
     if what == "recalculate":
         return document.calculateAll()
@@ -49,6 +57,8 @@ def step(document: Any, order: list[Any]) -> Any:
         start = time.perf_counter()
         document.calculateAll()
         return time.perf_counter() - start
+    if what == "type":
+        return type_into(context, document, *rest)
     sheet = document.getSheets().getByName(rest[0])
     area = sheet.getCellRangeByName(rest[1])
     if what == "set":
@@ -71,7 +81,7 @@ def wizard(context: Any, names: list[str]) -> dict[str, Any]:
     for n in range(found.getCount()):
         entry = {value.Name: value.Value for value in found.getByIndex(n)}
         if entry["Name"] in names:
-            arguments = [[a.Name, a.Description, a.IsOptional] for a in entry["Arguments"]]
+            arguments = [[a.Name, a.Description, a.IsOptional] for a in entry["Arguments"] or ()]
             out[entry["Name"]] = {"text": entry["Description"], "category": entry["Category"], "arguments": arguments}
     return out
 
@@ -86,9 +96,11 @@ def main() -> None:
     if job["action"] == "wizard":
         print(json.dumps(wizard(context, job["names"])))
         return
-    document = desktop.loadComponentFromURL(job["book"] or "private:factory/scalc", "_blank", 0, (hidden(),))
+    document = desktop.loadComponentFromURL(
+        job["book"] or "private:factory/scalc", "_blank", 0, (named("Hidden", True),)
+    )
     try:
-        print(json.dumps([step(document, order) for order in job["steps"]]))
+        print(json.dumps([step(context, document, order) for order in job["steps"]]))
     finally:
         document.close(True)
 

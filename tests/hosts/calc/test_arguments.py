@@ -45,7 +45,9 @@ CALLS = {  # formula: what the function is told
     "=AX_ECHO(Ties!B2:B1048576)": "Ties!r2c2 [[1200.0], ['TBC']] | None | None | None",
     "=AX_ECHO(Ties!1:1)": "Ties!r1c1 [['Mark', 'Length (mm)']] | None | None | None",
     "=AX_ECHO(Ties!Z:Z)": "Ties!r1c26 [[None]] | None | None | None",  # a whole column without a value
-    "=AX_ECHO(Ties!B2,Ties!A:B)": "Ties!r2c2 [[1200.0]] | [['Mark', 'Length (mm)'], ['T1', 1200.0], ['T2', 'TBC']] | None | None",
+    "=AX_ECHO(Ties!B2,Ties!A:B)": (
+        "Ties!r2c2 [[1200.0]] | [['Mark', 'Length (mm)'], ['T1', 1200.0], ['T2', 'TBC']] | None | None"
+    ),
     "=AX_ECHO(Ties!B2,,Ties!1:1)": "Ties!r2c2 [[1200.0]] | None | [['Mark', 'Length (mm)']] | None",
     "=ax_echo(Ties!B2)": "Ties!r2c2 [[1200.0]] | None | None | None",
     "=AX_ECHO(OFFSET(Ties!A1,1,1,1,1))": "Ties!r2c2 [[1200.0]] | None | None | None",

@@ -3,15 +3,13 @@
 from __future__ import annotations
 
 import datetime as dt
-from collections.abc import Iterator
 from typing import Any
 
 from xlaxial.cells import Cell, CellRange
 from xlaxial.hosts.calc.values import error_cell
 
-# Constants of UNO: com.sun.star.sheet.CellFlags, .FormulaResult and com.sun.star.util.NumberFormat.
+# Constants of UNO: com.sun.star.sheet.CellFlags and com.sun.star.util.NumberFormat.
 _DATE_CELLS = 2
-_NUMBER_RESULTS = 1
 _DATE, _TIME, _LOGICAL = 2, 4, 1024
 
 _LAST_ROW = 1_048_575
@@ -19,7 +17,7 @@ _LAST_COLUMN = 16_383
 _LARGE = 1000  # rows or columns from which only the sheet's used area is read
 
 _YEARS = (10_959.0, 73_050.0)  # serial numbers of the years 1930 to 2099: what two typed numbers can turn into
-_LOGICAL_CHECKS = 256  # cells with the result 0 or 1 that are looked at for being TRUE or FALSE
+_TRUTH_CHECKS = 256  # cells of value 0 or 1 in a range that are asked whether they show TRUE or FALSE
 
 
 def read_range(cells: Any, document: Any) -> CellRange:
@@ -40,18 +38,23 @@ def read_range(cells: Any, document: Any) -> CellRange:
         or column only the part down to the last filled cell comes back.
     """
     place = cells.getRangeAddress()
-    sheet = cells.getSpreadsheet()
     height, width = place.EndRow - place.StartRow + 1, place.EndColumn - place.StartColumn + 1
     if height > _LARGE or width > _LARGE:
-        rows = _read_large(cells, document, sheet, place, height, width)
+        rows = _read_large(cells, document, place, height, width)
     else:
         rows = _read(cells, document, place)
-    return CellRange(rows, sheet.getName(), place.StartRow + 1, place.StartColumn + 1)
+    return CellRange(rows, _sheet_name(cells.AbsoluteName), place.StartRow + 1, place.StartColumn + 1)
 
 
-def _read_large(cells: Any, document: Any, sheet: Any, place: Any, height: int, width: int) -> list[list[Cell]]:
+def _sheet_name(absolute: str) -> str:
+    """Return the sheet's name from an address such as ``$'Odd cells'.$A$1:$B$9``, the quickest to be had."""
+    name = absolute.rpartition(".")[0].removeprefix("$")
+    return name[1:-1].replace("''", "'") if name.startswith("'") else name
+
+
+def _read_large(cells: Any, document: Any, place: Any, height: int, width: int) -> list[list[Cell]]:
     """Read what lies in the sheet's used area; the rest is blank, or nothing where the range has no end of its own."""
-    cursor = sheet.createCursor()
+    cursor = cells.getSpreadsheet().createCursor()
     cursor.gotoEndOfUsedArea(False)
     end = cursor.getRangeAddress()
     used_height = max(min(height, end.EndRow - place.StartRow + 1), 1)
@@ -75,7 +78,9 @@ def _read_large(cells: Any, document: Any, sheet: Any, place: Any, height: int, 
 def _read(cells: Any, document: Any, place: Any) -> list[list[Cell]]:
     data = cells.getDataArray()
     rows: list[list[Cell]] = [[None if cell == "" else cell for cell in row] for row in data]
-    likely_date = likely_logical = number = False
+    number = False
+    truths: list[tuple[int, int]] = []  # row, column of numbers that could show as TRUE or FALSE
+    dates: dict[int, list[int]] = {}  # by column: the rows whose number could show as a date
     for n, row in enumerate(data):
         for m, cell in enumerate(row):
             if cell is None:
@@ -83,53 +88,54 @@ def _read(cells: Any, document: Any, place: Any) -> list[list[Cell]]:
             elif type(cell) is float:
                 number = True
                 if cell == 0.0 or cell == 1.0:
-                    likely_logical = True
+                    truths.append((n, m))
                 elif _YEARS[0] <= cell < _YEARS[1]:
-                    likely_date = True
+                    dates.setdefault(m, []).append(n)
     if number:
-        _mark_dates(rows, cells, document, place)
-    if likely_date or likely_logical:
-        _mark_results(rows, cells, document, place)
+        _mark_typed_dates(rows, cells, document, place)
+    if truths or dates:
+        kinds = _Kinds(document)
+        for n, m in truths[:_TRUTH_CHECKS]:
+            if kinds.of(cells, n, m) & _LOGICAL:
+                rows[n][m] = bool(rows[n][m])
+        _mark_found_dates(rows, cells, document, dates, kinds)
     return rows
 
 
-def _positions(found: Any, place: Any) -> Iterator[tuple[int, int]]:
-    for part in found.getRangeAddresses():
-        for row in range(part.StartRow - place.StartRow, part.EndRow - place.StartRow + 1):
-            for column in range(part.StartColumn - place.StartColumn, part.EndColumn - place.StartColumn + 1):
-                yield row, column
-
-
-def _mark_dates(rows: list[list[Cell]], cells: Any, document: Any, place: Any) -> None:
+def _mark_typed_dates(rows: list[list[Cell]], cells: Any, document: Any, place: Any) -> None:
     """Turn typed dates and times into datetime objects."""
     origin = None
-    for row, column in _positions(cells.queryContentCells(_DATE_CELLS), place):
+    for part in cells.queryContentCells(_DATE_CELLS).getRangeAddresses():
         origin = origin or _origin(document)
-        rows[row][column] = _moment(rows[row][column], origin)
+        for row in range(part.StartRow - place.StartRow, part.EndRow - place.StartRow + 1):
+            for column in range(part.StartColumn - place.StartColumn, part.EndColumn - place.StartColumn + 1):
+                rows[row][column] = _moment(rows[row][column], origin)
 
 
-def _mark_results(rows: list[list[Cell]], cells: Any, document: Any, place: Any) -> None:
-    """Turn results of formulas that show as dates, or as TRUE and FALSE, into what they show."""
-    formats = document.getNumberFormats()
-    kinds: dict[int, int] = {}
-    logical_checks = 0
-    for row, column in _positions(cells.queryFormulaCells(_NUMBER_RESULTS), place):
-        value = rows[row][column]
-        if type(value) is not float:
-            continue
-        if value == 0.0 or value == 1.0:
-            logical_checks += 1
-            if logical_checks > _LOGICAL_CHECKS:
-                continue
-        elif not _YEARS[0] <= value < _YEARS[1]:
-            continue
-        key = cells.getCellByPosition(column, row).getPropertyValue("NumberFormat")
-        if key not in kinds:
-            kinds[key] = formats.getByKey(key).getPropertyValue("Type")
-        if kinds[key] & _LOGICAL and value in (0.0, 1.0):
-            rows[row][column] = bool(value)
-        elif kinds[key] & (_DATE | _TIME):
-            rows[row][column] = _moment(value, _origin(document))
+def _mark_found_dates(
+    rows: list[list[Cell]], cells: Any, document: Any, likely: dict[int, list[int]], kinds: _Kinds
+) -> None:
+    """Turn results of formulas that show as dates into datetime objects."""
+    for column, found in likely.items():
+        formulas = cells.getCellRangeByPosition(column, found[0], column, found[-1]).getFormulaArray()
+        for row in found:
+            if formulas[row - found[0]][0].startswith(("=", "{")) and kinds.of(cells, row, column) & (_DATE | _TIME):
+                rows[row][column] = _moment(rows[row][column], _origin(document))
+
+
+class _Kinds:
+    """Kinds of number formats, each asked for once."""
+
+    def __init__(self, document: Any) -> None:
+        self._document = document
+        self._known: dict[int, int] = {}
+
+    def of(self, cells: Any, row: int, column: int) -> int:
+        """Return the kind of the format in which a cell shows its number, also where its formula chose it."""
+        key: int = cells.getCellByPosition(column, row).NumberFormat
+        if key not in self._known:
+            self._known[key] = self._document.getNumberFormats().getByKey(key).Type
+        return self._known[key]
 
 
 def _origin(document: Any) -> dt.datetime:

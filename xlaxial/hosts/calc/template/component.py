@@ -166,6 +166,7 @@ class AddIn(unohelper.Base, uno.getClass(CONFIG["interface"]), XAddIn, XCompatib
     @staticmethod
     def _argument(programmatic: str, number: int, field: str) -> str:
         arguments = FUNCTIONS[programmatic]["arguments"] if programmatic in FUNCTIONS else []
+        number -= 1  # the workbook, which no user sees, is the first
         return arguments[number][field] if 0 <= number < len(arguments) else ""
 
 
