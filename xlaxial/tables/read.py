@@ -121,7 +121,7 @@ def read_table(block: Any, kind: str, settings: Settings, headings: Any = None) 
     if headings is not None:
         layout = replace(find_layout(headings, TABLES[kind], settings), first_row=0)
     else:
-        layout = find_layout(block[:n_block], TABLES[kind], settings)
+        layout = find_layout(block, TABLES[kind], settings)
     first = layout.first_row
     n = max(n_block - first, 0)
     table = Table(kind, block, layout, n, filled=np.zeros(n, dtype=bool), marks=[None] * n)

@@ -98,6 +98,8 @@ def _column(
     own = {normal(theirs): names.get(normal(ours)) for ours, theirs in mapped}
     for term_text, unit_text in heading_forms(heading):
         word = own.get(normal(term_text)) or names.get(normal(term_text))
+        if word is not None and unit_text is None and below is None and word.dimension not in PLAIN and is_unit(heading):
+            break  # "N" is a symbol without its unit, or the bare unit: only the latter can be answered
         if word is not None:
             return _with_unit(heading, word, unit_text, below)
     if is_unit(heading):
