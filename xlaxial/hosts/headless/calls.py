@@ -65,7 +65,7 @@ def _argument(tag: str, value: Any, dates: Dates) -> Any:
 
 
 def fit(answer: Any, rows: float, columns: float) -> Any:
-    """Fit an array to a block of cells: one row or column is repeated, what is missing is #N/A."""
+    """Fit an array to a block of cells: one row or column is repeated, what is missing is #N/A, a blank is 0."""
     n_rows, n_columns = int(rows), int(columns)
     block = answer if isinstance(answer, list) else [[answer]]
     height, width = len(block), max(map(len, block))
@@ -75,6 +75,19 @@ def fit(answer: Any, rows: float, columns: float) -> Any:
         i, j = (0 if height == 1 else i), (0 if width == 1 else j)
         if i >= height or j >= len(block[i]):
             return missing
-        return "" if block[i][j] is None else block[i][j]
+        return 0.0 if block[i][j] is None else block[i][j]
 
     return [[cell(i, j) for j in range(n_columns)] for i in range(n_rows)]
+
+
+class Spills:
+    """Notes how large each array is that spills by itself."""
+
+    def __init__(self) -> None:
+        self.sizes: dict[int, tuple[int, int]] = {}  # rows and columns by the number of the formula
+
+    def note(self, answer: Any, number: float) -> Any:
+        """Return an array as it is, its blanks as 0, and note its size."""
+        block = answer if isinstance(answer, list) else [[answer]]
+        self.sizes[int(number)] = len(block), max(map(len, block))
+        return [[0.0 if cell is None else cell for cell in row] for row in block]

@@ -5,6 +5,8 @@ from __future__ import annotations
 import sys
 from pathlib import Path
 
+from openpyxl.utils import get_column_letter
+
 from xlaxial.caution import CAUTION
 from xlaxial.hosts.headless.errors import WorkbookError
 from xlaxial.hosts.headless.patch import write_values
@@ -22,7 +24,23 @@ def changed_values(done: Recalculation) -> dict[str, dict[tuple[int, int], objec
     for result in done.results:
         if result.state in (DIFFERENT, NOT_STORED):
             out.setdefault(parts[result.sheet], {})[result.row, result.column] = result.new
+    for sheet in done.book.sheets:
+        for anchor in sheet.resized:  # its range is written anew, whether or not its own value changes
+            out.setdefault(sheet.part, {}).setdefault(
+                anchor, next(r.new for r in done.results if r.sheet == sheet.name and (r.row, r.column) == anchor)
+            )
     return out
+
+
+def changed_areas(done: Recalculation) -> dict[str, dict[tuple[int, int], str]]:
+    """Return the new ranges of arrays that spill over other cells than before, by part of the zip."""
+    return {
+        sheet.part: {
+            anchor: f"{get_column_letter(c1)}{r1}:{get_column_letter(c2)}{r2}"
+            for anchor, (c1, r1, c2, r2) in sheet.resized.items()
+        }
+        for sheet in done.book.sheets
+    }
 
 
 def recalc(book: Path, output: Path | None, in_place: bool, keep_backup: bool = True) -> int:
@@ -33,7 +51,7 @@ def recalc(book: Path, output: Path | None, in_place: bool, keep_backup: bool = 
         values = changed_values(done)
         backup = book.with_name(f"{book.stem}.backup{book.suffix}") if in_place and keep_backup and values else None
         if values or target != book:
-            write_values(book, values, target, backup)
+            write_values(book, values, target, backup, changed_areas(done))
     except WorkbookError as wrong:
         print(wrong, file=sys.stderr)
         return FAILED

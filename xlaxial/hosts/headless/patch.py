@@ -24,6 +24,7 @@ Values = Mapping[tuple[int, int], Any]
 
 _CELL = re.compile(r"([A-Z]+)(\d+)")
 _TYPE = re.compile(rb"""\s+t\s*=\s*("[^"]*"|'[^']*')""")
+_REF = re.compile(rb"""\s+ref\s*=\s*("[^"]*"|'[^']*')""")
 _ILLEGAL = re.compile("[\x00-\x08\x0b\x0c\x0e-\x1f]")
 
 
@@ -92,6 +93,8 @@ def _after_tag(data: bytes, at: int) -> int:
 
 def _content(value: Any) -> tuple[bytes, str]:
     """Return the type attribute's value and the text of a cell's value."""
+    if value is None:
+        return b"", ""
     if isinstance(value, bool):
         return b"b", "1" if value else "0"
     if isinstance(value, CellError):
@@ -103,7 +106,7 @@ def _content(value: Any) -> tuple[bytes, str]:
     return b"str", escape(text)
 
 
-def patched(data: bytes, values: Values) -> bytes:
+def patched(data: bytes, values: Values, areas: Mapping[tuple[int, int], str] | None = None) -> bytes:
     """Return a sheet's XML with new values in some cells; every other byte stays.
 
     Parameters
@@ -111,7 +114,9 @@ def patched(data: bytes, values: Values) -> bytes:
     data : bytes
         The sheet's XML.
     values : mapping
-        New values by (row, column); a cell that is missing is made, in its place.
+        New values by (row, column), None for a blank; a cell that is missing is made, in its place.
+    areas : mapping, optional
+        New range, as A1:B3, of array formulas that stand at a (row, column) among the values.
 
     Raises
     ------
@@ -128,15 +133,18 @@ def patched(data: bytes, values: Values) -> bytes:
         kind, text = _content(values[row, column])
         encoded = text.encode("utf-8")
         if (row, column) not in sheet.cells:
-            missing.setdefault(row, []).append(column)
+            if values[row, column] is not None:
+                missing.setdefault(row, []).append(column)
             continue
         start, end, formula = sheet.cells[row, column]
         tag_end = _after_tag(data, start)
         opening = data[start:tag_end].rstrip(b">").rstrip(b"/").rstrip()
         opening = _TYPE.sub(b"", opening) + (b' t="' + kind + b'"' if kind else b"") + b">"
         kept = data[formula[0] : formula[1]] if formula else b""
+        if areas and (row, column) in areas:
+            kept = _REF.sub(b' ref="' + areas[row, column].encode() + b'"', kept, count=1)
         space = b' xml:space="preserve"' if kind == b"str" and text != text.strip() else b""
-        body = b"<" + p + b"v" + space + b">" + encoded + b"</" + p + b"v>"
+        body = b"" if values[row, column] is None else b"<" + p + b"v" + space + b">" + encoded + b"</" + p + b"v>"
         edits.append((start, end, opening + kept + body + b"</" + p + b"c>"))
     known = {number: (start, end) for number, start, end in sheet.rows}
     new_rows: dict[int, bytes] = {}
@@ -174,7 +182,13 @@ def _new_cell(prefix: bytes, row: int, column: int, value: Any) -> bytes:
     return b"<" + prefix + b'c r="' + place + b'"' + mark + b">" + value_tag + b"</" + prefix + b"c>"
 
 
-def write_values(path: Path, values: Mapping[str, Values], output: Path, backup: Path | None = None) -> None:
+def write_values(
+    path: Path,
+    values: Mapping[str, Values],
+    output: Path,
+    backup: Path | None = None,
+    areas: Mapping[str, Mapping[tuple[int, int], str]] | None = None,
+) -> None:
     """Write a workbook with new values in some cells.
 
     Written to a temporary file in the output's folder, flushed, read back, then renamed: a kill at any instant leaves
@@ -190,6 +204,8 @@ def write_values(path: Path, values: Mapping[str, Values], output: Path, backup:
         Where to write; may be `path`.
     backup : Path, optional
         Where to copy the workbook first.
+    areas : mapping, optional
+        New ranges of array formulas, by name of the sheet's part; see `patched`.
 
     Raises
     ------
@@ -200,7 +216,11 @@ def write_values(path: Path, values: Mapping[str, Values], output: Path, backup:
     if lock.exists():
         raise WorkbookError(f"{output.name}: is open in a spreadsheet program; close it first")
     with open_package(path) as package:
-        new = {part: patched(read_part(package, part), cells) for part, cells in values.items() if cells}
+        new = {
+            part: patched(read_part(package, part), cells, (areas or {}).get(part))
+            for part, cells in values.items()
+            if cells
+        }
         try:
             handle, name = tempfile.mkstemp(prefix=".xlaxial-", suffix=".tmp", dir=output.parent)
         except OSError as wrong:

@@ -3,24 +3,27 @@
 from __future__ import annotations
 
 import math
+import re
 from collections.abc import Callable, Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from pathlib import Path
 from typing import Any
 
 from openpyxl.utils import get_column_letter
 
 from xlaxial.cells import CellError
-from xlaxial.hosts.headless.calls import engine_function, fit
+from xlaxial.hosts.headless.calls import Spills, engine_function, fit
 from xlaxial.hosts.headless.engine import Engine, Unevaluated, knows
 from xlaxial.hosts.headless.errors import CannotEvaluate, WorkbookError
 from xlaxial.hosts.headless.freezing import Readers, area_of
 from xlaxial.hosts.headless.prepass.copies import Copies
-from xlaxial.hosts.headless.prepass.rewrite import FIT, Context, Rewritten
-from xlaxial.hosts.headless.workbook import Book, Formula, read_book
+from xlaxial.hosts.headless.prepass.rewrite import FIT, SPILL, Context, Rewritten
+from xlaxial.hosts.headless.supplied import SUPPLIED
+from xlaxial.hosts.headless.workbook import LARGEST_ARRAY, Book, Formula, read_book
 
 SAME, DIFFERENT, NOT_STORED, FROZEN = "same", "different", "no stored value", "not recalculated"
 RTOL = 1e-9
+_LONG_NUMBER = re.compile(r"(?<![\w.])(?=[\d.]{17})\d{1,15}\.\d+(?![\w.])")
 _TINY = 1e-12  # numbers below this part of the sheet's largest are equal to zero
 
 
@@ -100,12 +103,14 @@ def recalculate(
     book = read_book(Path(path))
     known = worksheet_functions() if functions is None else dict(functions)
     run = _Run(book, known, volatile, seconds)
-    run.enter()
     try:
-        run.engine.evaluate()
+        if any(sheet.formulas for sheet in book.sheets):
+            run.enter()
+            run.engine.evaluate()
     except TimeoutError:
         raise WorkbookError(f"{Path(path).name}: its evaluation takes longer than {seconds:g} s") from None
     run.freeze_unevaluated()
+    run.resize()
     run.freeze_downstream()
     return Recalculation(Path(path), book, _compare(run.engine, book, run.frozen, rtol))
 
@@ -119,13 +124,19 @@ class _Run:
         self.engine = Engine(date_1904=book.date_1904, seconds=seconds)
         extents = {sheet.name.lower(): sheet.extent for sheet in book.sheets}
         ours = frozenset(name.upper() for name in known)
-        self.copies = Copies(Context(ours, book.tables, book.names, extents, knows))
+        self.copies = Copies(Context(ours, book.tables, book.names, extents, lambda f: f in SUPPLIED or knows(f)))
+        self.hiding = {sheet.name.lower() for sheet in book.sheets if sheet.hides_rows}
         self.frozen: dict[tuple[str, int, int], str] = {}  # (sheet, row, column) -> why
         self.ready: list[tuple[Formula, Rewritten]] = []
         dates = {sheet.name.lower(): sheet.dates for sheet in book.sheets}
         for name, function in known.items():
             self.engine.add_function(name.upper(), engine_function(function, dates))
+        for name, function in SUPPLIED.items():
+            if not knows(name):
+                self.engine.add_function(name, function)
         self.engine.add_function(FIT, fit)
+        self.spills = Spills()
+        self.engine.add_function(SPILL, self.spills.note)
 
     def enter(self) -> None:
         """Put every value and formula into the engine."""
@@ -151,11 +162,19 @@ class _Run:
         )
         if made.volatile and not self.volatile:
             raise CannotEvaluate("changes at every calculation")
+        if made.counts_hidden and any(
+            area and area[0] in self.hiding for area in (area_of(text, formula.sheet) for text in made.references)
+        ):
+            raise CannotEvaluate("depends on which rows are hidden")
         text = made.text
-        if formula.area is not None:
+        if formula.dynamic:
+            text = f"={SPILL}({text[1:]},{len(self.ready)})"
+        elif formula.area is not None:
             c1, r1, c2, r2 = formula.area
+            if len(formula.places()) != (r2 - r1 + 1) * (c2 - c1 + 1):
+                raise CannotEvaluate(f"is an array formula of more than {LARGEST_ARRAY} cells")
             text = f"={FIT}({text[1:]},{r2 - r1 + 1},{c2 - c1 + 1})"
-        elif made.calls_ours:
+        elif made.calls_ours or made.may_spill:
             text = f"={FIT}({text[1:]},1,1)"
         try:
             self.engine.set_formula(formula.sheet, formula.row, formula.column, text)
@@ -165,11 +184,26 @@ class _Run:
 
     def freeze_unevaluated(self) -> None:
         """Note the cells for which the engine has no value."""
-        for formula, _ in self.ready:
+        for formula, made in self.ready:
             for row, column in formula.places():
                 value = self.engine.value(formula.sheet, row, column)
                 if isinstance(value, Unevaluated):
                     self.frozen[formula.sheet, row, column] = value.reason
+                elif made.doubtful and isinstance(value, CellError):
+                    self.frozen[formula.sheet, row, column] = made.doubtful
+
+    def resize(self) -> None:
+        """Note the arrays that spill over other cells than they are stored with."""
+        for number, (rows, columns) in self.spills.sizes.items():
+            formula = self.ready[number][0]
+            if formula.area is None or isinstance(
+                self.engine.value(formula.sheet, formula.row, formula.column), CellError
+            ):
+                continue
+            c1, r1, c2, r2 = formula.area
+            if (rows, columns) != (r2 - r1 + 1, c2 - c1 + 1):
+                sheet = next(sheet for sheet in self.book.sheets if sheet.name == formula.sheet)
+                sheet.resized[r1, c1] = (c1, r1, c1 + columns - 1, r1 + rows - 1)
 
     def freeze_downstream(self) -> None:
         """Note every cell that reads a frozen one, directly or by others."""
@@ -194,19 +228,32 @@ def _compare(engine: Engine, book: Book, frozen: dict[tuple[str, int, int], str]
     for sheet in book.sheets:
         numbers = [abs(v) for v in sheet.stored.values() if isinstance(v, (int, float)) and not isinstance(v, bool)]
         scale = max(numbers, default=1.0)
-        text = {place: formula.text for formula in sheet.formulas for place in formula.places()}
-        for (row, column), stored in sheet.stored.items():
-            place = (sheet.name, row, column)
+        text, spilled = {}, {}
+        for formula in sheet.formulas:
+            now = replace(formula, area=sheet.resized.get((formula.row, formula.column), formula.area))
+            spilled.update(dict.fromkeys(now.places(), formula.text))
+            text.update(dict.fromkeys(formula.places(), formula.text))
+        for row, column in {**text, **spilled}:
+            place, stored = (sheet.name, row, column), sheet.stored.get((row, column))
+            source = text.get((row, column)) or spilled[row, column]
             if place in frozen:
-                out.append(Result(*place, text[row, column], stored, stored, FROZEN, frozen[place]))
+                out.append(Result(*place, source, stored, stored, FROZEN, frozen[place]))
                 continue
-            new = engine.value(*place)
-            new = 0.0 if new is None else new
+            new = fifteen_digits(engine.value(*place))
+            if new is None and (row, column) in spilled:
+                new = 0.0
             state = SAME if equal(stored, new, rtol, scale) else DIFFERENT
-            if stored is None and new != "":
+            if stored is None and new not in ("", None) and (row, column) in text:
                 state = NOT_STORED
-            out.append(Result(*place, text[row, column], stored, new, state))
+            out.append(Result(*place, source, stored, new, state))
     return out
+
+
+def fifteen_digits(value: Any) -> Any:
+    """Return a text with its numbers cut to 15 digits, as spreadsheets join them; anything else as it is."""
+    if not isinstance(value, str) or len(value) < 17:
+        return value
+    return _LONG_NUMBER.sub(lambda found: f"{float(found[0]):.15g}", value)
 
 
 def equal(stored: Any, new: Any, rtol: float, scale: float) -> bool:
@@ -215,8 +262,8 @@ def equal(stored: Any, new: Any, rtol: float, scale: float) -> bool:
         return stored is new
     if isinstance(stored, (int, float)) and isinstance(new, (int, float)):
         return math.isclose(stored, new, rel_tol=rtol, abs_tol=_TINY * min(scale, 1.0))
-    if stored is None or new == "":
-        return stored in (None, "") and new in ("", None)
+    if stored in (None, "") or new in (None, ""):
+        return stored in (None, "") and new in (None, "")
     if isinstance(stored, CellError) or isinstance(new, CellError):
         return bool(stored == new)
     return bool(stored == new)

@@ -15,6 +15,7 @@ from openpyxl import load_workbook
 from openpyxl.reader.strings import read_string_table
 from openpyxl.utils import range_boundaries
 from openpyxl.utils.datetime import CALENDAR_MAC_1904
+from openpyxl.utils.escape import unescape
 from openpyxl.worksheet.formula import ArrayFormula, DataTableFormula
 
 from xlaxial.cells import ERROR_CODES, CellError
@@ -23,6 +24,10 @@ from xlaxial.hosts.headless.package import SheetPart, open_package, read_part, r
 from xlaxial.hosts.headless.prepass.names import Names
 from xlaxial.hosts.headless.prepass.structured import TableArea
 from xlaxial.hosts.headless.stored import StoredValues
+
+LARGEST_ARRAY = 1_000_000
+"""Cells of an array formula beyond which it is not evaluated."""
+_MOST_TEXT = 200_000_000  # characters of all cells of a sheet together; shared strings can be repeated without end
 
 
 @dataclass(frozen=True)
@@ -42,6 +47,8 @@ class Formula:
         if self.area is None:
             return [(self.row, self.column)]
         c1, r1, c2, r2 = self.area
+        if (c2 - c1 + 1) * (r2 - r1 + 1) > LARGEST_ARRAY:
+            return [(self.row, self.column)]
         return [(row, column) for row in range(r1, r2 + 1) for column in range(c1, c2 + 1)]
 
 
@@ -56,6 +63,8 @@ class Sheet:
     stored: dict[tuple[int, int], Any] = field(default_factory=dict)  # stored results of formulas and array cells
     dates: dict[tuple[int, int], dt.datetime | dt.date | dt.time | dt.timedelta] = field(default_factory=dict)
     extent: tuple[int, int] = (1, 1)  # last row and column in use
+    resized: dict[tuple[int, int], tuple[int, int, int, int]] = field(default_factory=dict)  # new areas of arrays
+    hides_rows: bool = False  # by hand or by a filter
 
     def extend_to(self, row: int, column: int) -> None:
         """Take a cell into the extent."""
@@ -112,7 +121,7 @@ def read_book(path: Path) -> Book:
         for table in worksheet.tables.values():
             c1, r1, _, r2 = range_boundaries(table.ref)
             headings = 1 if table.headerRowCount is None else table.headerRowCount
-            columns = tuple(column.name for column in table.tableColumns)
+            columns = tuple(unescape(column.name) for column in table.tableColumns)
             area = TableArea(
                 table.displayName, worksheet.title, r1, r2, c1, columns, bool(headings), bool(table.totalsRowCount)
             )
@@ -127,6 +136,8 @@ def _shared_strings(package: zipfile.ZipFile) -> list[str]:
 
 def _read_sheet(part: SheetPart, worksheet: Any, stored: StoredValues) -> Sheet:
     sheet = Sheet(part.name, part.part)
+    sheet.hides_rows = any(row.hidden for row in worksheet.row_dimensions.values())
+    n_characters = 0
     for (row, column), cell in worksheet._cells.items():  # `iter_rows` would walk through all blanks
         value, kind = cell.value, cell.data_type
         if value is None:
@@ -140,6 +151,10 @@ def _read_sheet(part: SheetPart, worksheet: Any, stored: StoredValues) -> Sheet:
         elif kind == "d":
             sheet.dates[row, column] = value
             value = stored[row, column]
+        elif kind == "s":
+            n_characters += len(value)
+            if n_characters > _MOST_TEXT:
+                raise WorkbookError(f"the sheet {part.name} holds more than {_MOST_TEXT} characters of text")
         values = sheet.rows.setdefault(row, [])
         if column > len(values):
             values.extend([None] * (column - len(values)))

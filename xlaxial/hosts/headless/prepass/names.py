@@ -5,11 +5,12 @@ from __future__ import annotations
 import re
 from dataclasses import dataclass, field
 
-_NAME = re.compile(r"^[^\W\d][\w.\\?]*$")
+_NAME = re.compile(r"^[^\W\d](?:[\w.\\?]*)$|^\\[\w.\\?]*$")
 _QUALIFIED = re.compile(r"^('(?:[^']|'')+'|[^'!]+)!([^\W\d][\w.\\?]*)$")
 _RANGE = re.compile(
     r"^(?:(?:'(?:[^']|'')+'|[^'!()+*/,;\s-]+)!)?\$?[A-Z]{1,3}\$?\d+(?::\$?[A-Z]{1,3}\$?\d+)?$", re.IGNORECASE
 )
+_COLUMN_OR_ROW = re.compile(r"^(?:TRUE|FALSE|R|C|R\d+C\d+)$", re.IGNORECASE)
 _CELL = re.compile(r"^\$?[A-Z]{1,3}\$?\d{1,7}$", re.IGNORECASE)
 
 
@@ -33,3 +34,8 @@ class Names:
             return None
         text = text.lstrip("=")
         return text if _RANGE.match(text) else f"({text})"
+
+
+def is_name(operand: str) -> bool:
+    """Whether an operand can be nothing but a defined name."""
+    return bool(_NAME.match(operand)) and not _CELL.match(operand) and not _COLUMN_OR_ROW.match(operand)

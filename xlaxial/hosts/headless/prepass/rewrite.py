@@ -12,16 +12,26 @@ from openpyxl.formula.tokenizer import Token
 from xlaxial.hosts.headless.errors import CannotEvaluate
 from xlaxial.hosts.headless.prepass.arguments import tagged
 from xlaxial.hosts.headless.prepass.intersection import intersect, is_range, takes_one_value
-from xlaxial.hosts.headless.prepass.names import Names
+from xlaxial.hosts.headless.prepass.names import Names, is_name
 from xlaxial.hosts.headless.prepass.prefixes import bare_name
 from xlaxial.hosts.headless.prepass.structured import TableArea, expand
+from xlaxial.hosts.headless.prepass.textformat import is_trusted
 
 FIT = "AX__FIT"  # internal function that fits an array to its cells
+SPILL = "AX__SPILL"  # internal function that notes the size of an array that spills by itself
 _EXTERNAL = re.compile(r"^'?[^'!]*\[\d+\]|^\[\d+\]")
 _LONGEST = 8192
 _DEEPEST = 20  # names within names
 _VOLATILE = frozenset(("NOW", "TODAY", "RAND", "RANDBETWEEN", "RANDARRAY"))
 _REACHING = frozenset(("INDIRECT", "OFFSET"))
+_GIVES_ARRAY = frozenset(
+    """
+    CHOOSECOLS CHOOSEROWS COLUMN DROP EXPAND FILTER FREQUENCY GROWTH HSTACK INDEX INDIRECT LET LINEST LOGEST MINVERSE
+    MMULT OFFSET RANDARRAY ROW SEQUENCE SORT SORTBY TAKE TEXTSPLIT TOCOL TOROW TRANSPOSE TREND UNIQUE VSTACK WRAPCOLS
+    WRAPROWS XLOOKUP
+    """.split()  # noqa: SIM905 - a list of quoted names reads worse
+)
+_HANDLED = frozenset(("SINGLE", "TEXT"))
 _LOCAL = ("_xlpm.", "_xleta.")  # prefixes of names that LET and LAMBDA define
 
 
@@ -46,6 +56,9 @@ class Rewritten:
     volatile: bool = False  # gives another value at every calculation
     reaching: bool = False  # reads cells that its text does not name
     by_place: bool = False  # what was put in depends on where the formula stands
+    may_spill: bool = False  # may give more than one value
+    doubtful: str = ""  # why an error value of it is not to be trusted
+    counts_hidden: bool = False  # depends on which rows are hidden
 
 
 @dataclass
@@ -104,6 +117,7 @@ class _Rewriting:
         elif item.type == Token.OPERAND and item.subtype == Token.RANGE:
             frame.pieces.append(self._operand(item.value))
         else:
+            self.made.may_spill |= item.type == Token.ARRAY
             frame.pieces.append(item.value)
 
     def _open(self, text: str, frame: _Frame) -> None:
@@ -115,13 +129,17 @@ class _Rewriting:
         name = bare_name(text[:-1])
         self.made.volatile |= name in _VOLATILE
         self.made.reaching |= name in _REACHING
+        self.made.may_spill |= name in _GIVES_ARRAY
+        self.made.counts_hidden |= name in ("SUBTOTAL", "AGGREGATE")
+        if name == "CONVERT":
+            self.made.doubtful = "CONVERT knows fewer units here"
         if name in self.context.ours:
             self.made.calls_ours = True
             self.stack.append(_Frame(name, handled=True))
             return
         if _EXTERNAL.match(text):
             raise CannotEvaluate("calls a function of another workbook")
-        if name == "SINGLE":
+        if name in _HANDLED:
             self.stack.append(_Frame(name, handled=True))
             return
         if not self.context.knows(name):
@@ -137,6 +155,10 @@ class _Rewriting:
         arguments = [*frame.arguments, inner]
         if frame.function == "SINGLE":
             return f"({inner})" if re.fullmatch(r"[^()]+", inner) else f"{FIT}({inner},1,1)"
+        if frame.function == "TEXT":
+            if len(arguments) != 2 or not is_trusted(arguments[1]):
+                raise CannotEvaluate(f"the format of TEXT is not evaluated here: {inner.strip()}"[:100])
+            return f"TEXT({','.join(arguments)})"
         if len(arguments) == 1 and not inner.strip():
             return f"{frame.function}()"
         extents = self.context.extents
@@ -151,6 +173,7 @@ class _Rewriting:
         self.made.references.append(text)
         if not is_range(text):
             return text
+        self.made.may_spill |= any(frame.function == "" for frame in self.stack[-1:])
         calls = [(frame.function, frame.argument) for frame in self.stack if frame.function != "("]
         if marked or calls[-1][0] == "SINGLE" or (not self.array and takes_one_value(calls)):
             self.made.by_place = True
@@ -169,9 +192,11 @@ class _Rewriting:
             plain = expand(value, self.context.tables, self.sheet, self.row, self.column)
             if plain is not None:
                 return plain
+        if value.lower() in self.context.tables:
+            return expand(f"{value}[]", self.context.tables, self.sheet, self.row, self.column) or value
         named = self.context.names.resolve(value, self.sheet)
         if named is None:
-            return value
+            return "#NAME?" if is_name(value) else value
         if "#REF!" in named:
             return "#REF!"
         if not named.startswith("("):
@@ -185,6 +210,9 @@ class _Rewriting:
         self.made.volatile |= inner.volatile
         self.made.reaching |= inner.reaching
         self.made.calls_ours |= inner.calls_ours
+        self.made.may_spill |= inner.may_spill
+        self.made.counts_hidden |= inner.counts_hidden
+        self.made.doubtful = self.made.doubtful or inner.doubtful
         return f"({inner.text[1:]})"
 
 

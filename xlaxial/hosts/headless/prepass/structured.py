@@ -9,7 +9,7 @@ from openpyxl.utils import get_column_letter
 
 from xlaxial.hosts.headless.errors import CannotEvaluate
 
-_WHOLE = re.compile(r"^([^\W\d][\w.\\]*)?\[(.*)\]$", re.DOTALL)
+_WHOLE = re.compile(r"^((?:[^\W\d]|\\)[\w.\\]*)?\[(.*)\]$", re.DOTALL)
 _COLUMN = re.compile(r"\[((?:[^\[\]']|'.)*)\]")
 _ITEM = re.compile(r"\[?(#(?:All|Data|Headers|Totals|This Row))\]?\s*,?\s*", re.IGNORECASE)
 
@@ -59,7 +59,7 @@ def expand(reference: str, tables: dict[str, TableArea], sheet: str, row: int, c
     names = [re.sub(r"'(.)", r"\1", name) for name in (_COLUMN.findall(body) or ([body] if body else []))]
     known = [heading.lower() for heading in table.columns]
     try:
-        places = [table.first_column + known.index(" ".join(name.lower().split(" "))) for name in names]
+        places = [table.first_column + known.index(name.strip().lower()) for name in names]
     except ValueError:
         raise CannotEvaluate(f"no column for {reference}") from None
     first = places[0] if places else table.first_column
@@ -72,6 +72,8 @@ def expand(reference: str, tables: dict[str, TableArea], sheet: str, row: int, c
     elif "#totals" in items:
         top, bottom = (top if "#data" in items else table.last_row), table.last_row
     elif "#this row" in items:
+        if not (table.holds(sheet, row, table.first_column) and top <= row <= bottom):
+            return "#VALUE!"
         top = bottom = row
     start, end = f"${get_column_letter(first)}${top}", f"${get_column_letter(last)}${bottom}"
     quoted = "'" + table.sheet.replace("'", "''") + "'!"
