@@ -11,7 +11,7 @@ from xlaxial.model.network import Bars, Network, Supports
 from xlaxial.solver.layout import Layout, largest_at
 
 _LONG = 1000  # nodes of a chain from which what is out of balance is added up with its signs
-_FAINT = 1e-18  # forces below this part of stiffness times displacement are rounding, even of two doubles
+_FAINT = 1e-20  # forces below this part of stiffness times displacement are rounding, even of two doubles
 _LEAST = 1e-300  # keeps a member without any force from dividing by zero
 
 
@@ -61,16 +61,16 @@ class Equations:
         return part, keep, bars, stands
 
     def finite(self) -> Flags | None:
-        """Members whose numbers are all finite and whose bars are stiff, (n_members,); None where all are."""
+        """Members whose numbers are finite and no stiffness below zero, (n_members,); None where all are so."""
         springs = np.where(self.network.supports.stiffness == np.inf, 0.0, self.network.supports.stiffness)
         given = [v for v in (self.free, self.span, self.force, self.settlement) if v is not None]
         with np.errstate(all="ignore"):  # what is not finite is sought
             total = sum(float(v.sum()) for v in (self.bar, springs, *given))
-            if np.isfinite(total) and bool((self.bar > 0.0).all()) and bool((springs >= 0.0).all()):
+            if np.isfinite(total) and bool((self.bar >= 0.0).all()) and bool((springs >= 0.0).all()):
                 return None
         network = self.network
         good = np.ones(network.n_members, dtype=bool)
-        good[network.bars.member[~(np.isfinite(self.bar) & (self.bar > 0.0))]] = False
+        good[network.bars.member[~(np.isfinite(self.bar) & (self.bar >= 0.0))]] = False
         good[network.node_member[network.supports.node[~(springs >= 0.0)]]] = False
         own_support = network.node_member[network.supports.node]
         for values, own in (

@@ -49,10 +49,10 @@ def solve_linear(
     Returns
     -------
     LinearState
-        All nan in members with numbers that are not finite, bars without stiffness, or forces that cannot be told.
+        All nan in members with numbers that are not finite, stiffness below zero, or forces that cannot be told.
     """
     equations = _equations(network, actions, preload)
-    found = _solve(equations, assembly) if network.n_nodes else _Found.empty(equations)
+    found = solve_equations(equations, assembly) if network.n_nodes else Found.empty(equations)
     return LinearState(
         found.displacement.T,
         found.start.T,
@@ -70,7 +70,7 @@ class _Solver(Protocol):
 
 
 @dataclass
-class _Found:
+class Found:
     """Results, a case per row."""
 
     displacement: Floats  # (n_cases, n_nodes) m
@@ -82,14 +82,14 @@ class _Found:
     imbalance: Floats  # (n_cases, n_members)
 
     @classmethod
-    def empty(cls, equations: Equations) -> _Found:
+    def empty(cls, equations: Equations) -> Found:
         """All nan."""
         network, cases = equations.network, equations.force.shape[0]
         bars, members = network.bars.start.size, network.n_members
         sizes = (network.n_nodes, bars, bars, bars, network.supports.node.size, members, members)
         return cls(*(np.full((cases, size), np.nan) for size in sizes))
 
-    def put(self, other: _Found, nodes: Ints, bars: Ints, supports: Ints, members: Ints) -> None:
+    def put(self, other: Found, nodes: Ints, bars: Ints, supports: Ints, members: Ints) -> None:
         """Take over the results of some members."""
         self.displacement[:, nodes] = other.displacement
         self.start[:, bars], self.end[:, bars] = other.start, other.end
@@ -121,17 +121,17 @@ def _equations(network: Network, actions: Actions, preload: Floats | None) -> Eq
     )
 
 
-def _solve(equations: Equations, assembly: Assembly | None = None) -> _Found:
+def solve_equations(equations: Equations, assembly: Assembly | None = None) -> Found:
     """Solve all members; those that need more are solved again by themselves."""
     network = equations.network
     finite = equations.finite()
     if finite is not None:
-        return _put_together(equations, _Found.empty(equations), finite)
+        return _put_together(equations, Found.empty(equations), finite)
     if assembly is None:
         assembly = Assembly(network)
     failed = assembly.factor(equations.bar, network.supports.stiffness)
     if failed.any():
-        return _alone(equations, _put_together(equations, _Found.empty(equations), ~failed), failed)
+        return _alone(equations, _put_together(equations, Found.empty(equations), ~failed), failed)
     balance = Balance(equations, assembly.layout, assembly.links)
     u, out = _first(equations, balance, assembly)
     bound = balance.measure(out, TRUSTED)
@@ -196,20 +196,20 @@ def _add(high: Floats, low: Floats, more: Floats) -> None:
             h[a : a + _CHUNK] = total
 
 
-def _put_together(equations: Equations, found: _Found, members: Flags) -> _Found:
+def _put_together(equations: Equations, found: Found, members: Flags) -> Found:
     """Solve some members by themselves and put their results among the others."""
     if members.any():
         part, nodes, bars, supports = equations.part(members)
-        found.put(_solve(part), nodes, bars, supports, np.flatnonzero(members))
+        found.put(solve_equations(part), nodes, bars, supports, np.flatnonzero(members))
     return found
 
 
-def _alone(equations: Equations, found: _Found, members: Flags) -> _Found:
+def _alone(equations: Equations, found: Found, members: Flags) -> Found:
     """Solve members one by one without subtractions; nan where even so the forces cannot be told."""
     for member in np.flatnonzero(members).tolist():
         part, nodes, bars, supports = equations.part(np.arange(members.size) == member)
         own = part.network
-        result = _Found.empty(part)
+        result = Found.empty(part)
         if own.n_nodes <= MOST_NODES:
             solver = Dominant(own, part.bar, own.supports.stiffness)
             assembly = Assembly(own)
@@ -222,7 +222,7 @@ def _alone(equations: Equations, found: _Found, members: Flags) -> _Found:
     return found
 
 
-def _found(balance: Balance, u: Floats, low: Floats | None, bound: Floats) -> _Found:
+def _found(balance: Balance, u: Floats, low: Floats | None, bound: Floats) -> Found:
     """Results of a state that has been checked last."""
     layout = balance.layout
     rise = layout.rise(u)
@@ -231,4 +231,4 @@ def _found(balance: Balance, u: Floats, low: Floats | None, bound: Floats) -> _F
         u += low
     start = layout.to_bars(balance.start)
     end = start if balance.end is balance.start else layout.to_bars(balance.end)
-    return _Found(u, start, end, layout.to_bars(rise), balance.reaction, balance.overall(), bound)
+    return Found(u, start, end, layout.to_bars(rise), balance.reaction, balance.overall(), bound)

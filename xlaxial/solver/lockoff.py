@@ -5,14 +5,14 @@ from __future__ import annotations
 from dataclasses import dataclass, replace
 
 import numpy as np
-from scipy.sparse import coo_array
-from scipy.sparse.csgraph import connected_components
 
 from xlaxial.arrays import Flags, Floats, Ints
-from xlaxial.model.network import Actions, Bars, Network
-from xlaxial.solver.connectivity import diagnose, pieces_of
-from xlaxial.solver.displacement import solve_linear
+from xlaxial.model.network import Network, Supports
+from xlaxial.solver.balance import Equations
+from xlaxial.solver.connectivity import pieces_of
+from xlaxial.solver.displacement import solve_equations
 from xlaxial.solver.flexibility import flexibility
+from xlaxial.solver.runs import runs
 
 _SAME = 1e-9  # preloads that differ by less, relatively, are equal
 
@@ -22,86 +22,83 @@ class LockOff:
     """Free lengthening that stands for preload, or why there is none."""
 
     imposed: Floats  # (n_bars, n_cases) m
-    unlike: Ints  # bars whose preload differs from another's in the same unbranched run
+    unlike: Ints  # bars whose preload does not go with that of the first preloaded bar of the same unbranched run
     unheld: Ints  # preloaded bars whose force nothing can hold
-
-
-def runs(network: Network) -> Ints:
-    """Return the unbranched run of each bar, (n_bars,): bars in series through nodes with no support."""
-    bars = network.bars
-    degree = np.bincount(bars.start, minlength=network.n_nodes) + np.bincount(bars.end, minlength=network.n_nodes)
-    through = degree == 2
-    through[network.supports.node] = False
-    touching = np.concatenate([bars.start, bars.end])
-    bar = np.concatenate([np.arange(bars.start.size)] * 2)
-    at = through[touching]
-    order = np.argsort(touching[at], kind="stable")
-    pairs = bar[at][order].reshape(-1, 2)
-    graph = coo_array((np.ones(len(pairs)), (pairs[:, 0], pairs[:, 1])), shape=(bars.start.size,) * 2)
-    return connected_components(graph, directed=False)[1].astype(np.int64)
 
 
 def lock_off(network: Network, preload: Floats, preloaded: Flags) -> LockOff:
     """Find the free lengthening of preloaded bars that gives each its force when nothing else acts.
 
-    The first preloaded bar of a run carries the run's preload; it is replaced by the pair of forces at its ends, the
-    rest is solved, and its free lengthening is what then fits: e0 = (u_end - u_start) - f P.
+    The first preloaded bar of an unbranched run carries the run's preload. All carriers are taken out and replaced by
+    the pairs of forces at their ends, the rest is solved, and a carrier's free lengthening is what then fits:
+    e0 = (u_end - u_start) - f P. A piece that hangs on carriers alone must be in balance under their forces; it may
+    then stand anywhere, and any place of it gives the same forces.
 
     Parameters
     ----------
     network : Network
-        Held throughout.
+        Every connected piece is held.
     preload : Floats
         (n_bars, n_cases) N, tension positive.
     preloaded : Flags
-        (n_bars,) where a preload is given (it may be zero in a case).
+        (n_bars,) where a preload is given. A given preload of zero is one: the bar is locked off without force,
+        whatever others do. A case, or a member, without any preload that is not zero has none.
 
     Returns
     -------
     LockOff
-        Zero where there is no preload, and where it cannot be had (see `unlike` and `unheld`).
+        No lengthening where there is no preload, and where it cannot be had.
     """
     n_bars, n_cases = preload.shape
-    none = np.zeros(0, dtype=np.int64)
+    bars, none = network.bars, np.zeros(0, dtype=np.int64)
     imposed = np.zeros((n_bars, n_cases))
-    given = np.flatnonzero(preloaded)
-    if not given.size or not preload.any():
+    acts = np.zeros(network.n_members, dtype=bool)
+    acts[bars.member[preloaded & (preload != 0.0).any(axis=1)]] = True
+    given = np.flatnonzero(preloaded & acts[bars.member])
+    if not given.size:
         return LockOff(imposed, none, none)
-    run = runs(network)
-    _, first, back = np.unique(run[given], return_index=True, return_inverse=True)
+    found = runs(network)
+    _, first, back = np.unique(found.run[given], return_index=True, return_inverse=True)
     carrier = given[first]
-    apart = np.abs(preload[given] - preload[carrier][back]) > _SAME * np.abs(preload[carrier][back])
-    unlike = given[apart.any(axis=1)]
-    carrier = carrier[preload[carrier].any(axis=1)]
-    remaining = _without(network, carrier)
-    loose_nodes = [node for loose in diagnose(remaining) if loose.kind != "pieces" for node in loose.nodes]
-    unheld = none
-    if loose_nodes:
-        _, piece = pieces_of(remaining)
-        loose = np.isin(piece, np.unique(piece[np.array(loose_nodes, dtype=np.int64)]))
-        touched = loose[network.bars.start[carrier]] | loose[network.bars.end[carrier]]
-        unheld = carrier[touched]
-        carrier = carrier[~touched]
-        remaining = _without(network, carrier)
-        if any(loose.kind != "pieces" for loose in diagnose(remaining)):
-            unheld, carrier = np.concatenate([unheld, carrier]), none
-    if carrier.size:
-        force = np.zeros((network.n_nodes, n_cases))
-        np.add.at(force, network.bars.start[carrier], preload[carrier])
-        np.subtract.at(force, network.bars.end[carrier], preload[carrier])
-        n_left = remaining.bars.start.size
-        nothing = np.zeros((n_left, n_cases))
-        state = solve_linear(
-            remaining, Actions(force, nothing, nothing, np.zeros((network.supports.node.size, n_cases)))
-        )
-        moved = state.displacement[network.bars.end[carrier]] - state.displacement[network.bars.start[carrier]]
-        imposed[carrier] = moved - flexibility(network.bars)[carrier, None] * preload[carrier]
+    meant = preload[carrier][back] * (found.sense[given] * found.sense[carrier][back])[:, None]
+    unlike = given[np.logical_not(np.abs(preload[given] - meant) <= _SAME * np.abs(meant)).any(axis=1)]
+    held, unheld = _held_apart(network, carrier, preload)
+    flexible = flexibility(bars)
+    stiffness = 1.0 / flexible
+    stiffness[carrier] = 0.0
+    force = np.zeros((n_cases, network.n_nodes))
+    for row, pull in zip(force, preload[carrier].T, strict=True):
+        np.add.at(row, bars.start[carrier], pull)
+        np.subtract.at(row, bars.end[carrier], pull)
+    solved = solve_equations(Equations(held, stiffness, None, None, force, None))
+    imposed[carrier] = solved.elongation.T[carrier] - flexible[carrier, None] * preload[carrier]
+    imposed[unheld] = 0.0
     return LockOff(imposed, unlike, unheld)
 
 
-def _without(network: Network, bars: Ints) -> Network:
-    """Return the network without some bars."""
-    keep = np.ones(network.bars.start.size, dtype=bool)
-    keep[bars] = False
-    fields = {name: getattr(network.bars, name)[keep] for name in Bars.__dataclass_fields__}
-    return replace(network, bars=Bars(**fields))
+def _held_apart(network: Network, carrier: Ints, preload: Floats) -> tuple[Network, Ints]:
+    """Hold one node of each piece that loses its hold without the carriers; find carriers that such a piece lets go.
+
+    Returns
+    -------
+    tuple
+        The network with supports added, and (n,) carriers whose forces leave a piece without support out of balance.
+    """
+    start, end, supports = network.bars.start, network.bars.end, network.supports
+    stays = np.ones(start.size, dtype=bool)
+    stays[carrier] = False
+    count, piece = pieces_of(network, stays)
+    loose = np.ones(count, dtype=bool)
+    loose[piece[supports.node]] = False
+    if not loose.any():
+        return network, carrier[:0]
+    left = np.zeros((count, preload.shape[1]))
+    size = np.zeros_like(left)
+    for ends, sign in ((start, 1.0), (end, -1.0)):
+        np.add.at(left, piece[ends[carrier]], sign * preload[carrier])
+        np.add.at(size, piece[ends[carrier]], np.abs(preload[carrier]))
+    lets_go = loose & np.logical_not(np.abs(left) <= _SAME * size).any(axis=1)
+    _, node = np.unique(piece, return_index=True)
+    node = node[loose]
+    more = Supports(np.append(supports.node, node), np.append(supports.stiffness, np.full(node.size, np.inf)))
+    return replace(network, supports=more), carrier[lets_go[piece[start[carrier]]] | lets_go[piece[end[carrier]]]]
