@@ -33,16 +33,17 @@ class Office:
 
     soffice: Path  # the program
     version: tuple[int, ...]  # such as (25, 2, 3, 2); empty where it does not say
+    extensions: Path  # folder whose extensions every user of the machine has
 
     @property
     def program(self) -> Path:
         """Folder of the program's files."""
-        return self.soffice.resolve().parent
+        return _program(self.soffice)
 
     @property
-    def shared_extensions(self) -> Path:
-        """Folder whose extensions every user of the machine has."""
-        return self.program.parent / ("Resources" if sys.platform == "darwin" else "share") / "extensions"
+    def unopkg(self) -> Path:
+        """The program that adds extensions to a user's profile."""
+        return self.program / ("unopkg.com" if sys.platform == "win32" else "unopkg")
 
     def at_least(self, least: tuple[int, ...]) -> bool:
         """Tell whether the version is the given one or newer."""
@@ -60,8 +61,19 @@ def find_office() -> Office | None:
     candidates = [named] if named else [on_path, *(str(Path(place) / "soffice") for place in _PLACES)]
     for candidate in candidates:
         if candidate is not None and (found := shutil.which(candidate)):
-            return Office(Path(found), _version(Path(found)))
+            soffice = Path(found)
+            if sys.platform == "win32" and soffice.with_suffix(".com").exists():
+                soffice = soffice.with_suffix(".com")  # the one that writes to the console and waits
+            share = _program(soffice).parent / ("Resources" if sys.platform == "darwin" else "share")
+            return Office(soffice, _version(soffice), share / "extensions")
     return None
+
+
+def _program(soffice: Path) -> Path:
+    """Return the folder of the program's files; what stands on the path may be a script in another folder."""
+    folders = [soffice.resolve().parent, *map(Path, _PLACES)]
+    known = (folder for folder in folders if any((folder / name).exists() for name in ("bootstraprc", "bootstrap.ini")))
+    return next(known, folders[0])
 
 
 def _version(soffice: Path) -> tuple[int, ...]:
