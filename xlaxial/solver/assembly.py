@@ -14,6 +14,7 @@ import numpy as np
 from xlaxial.arrays import Flags, Floats, Ints
 from xlaxial.model.network import Network
 from xlaxial.solver.banded import Banded
+from xlaxial.solver.holds import Holds
 from xlaxial.solver.layout import Layout
 from xlaxial.solver.sparse import Sparse
 from xlaxial.solver.tridiagonal import Tridiagonal
@@ -52,7 +53,7 @@ class Assembly:
     def __init__(self, network: Network) -> None:
         self.network = network
         self.layout = Layout(network)
-        self.fixed: Flags = np.zeros(network.n_nodes, dtype=bool)  # (n_nodes,) held by a rigid support
+        self.holds = Holds(network, network.supports.stiffness)  # supports, by the stiffnesses of the last `factor`
         self.links: Floats = np.zeros(0)  # (n_links,) N/m, stiffness of the layout's links
         self._whole = Tridiagonal()
         self._blocks = [] if self.layout.chain else _blocks(network)
@@ -89,12 +90,11 @@ class Assembly:
     def _factor(self, bar: Floats, support: Floats, left_out: Flags) -> int:
         """Factorise all but some members; -1, or a node of a member that fails."""
         network, layout, n = self.network, self.layout, self.network.n_nodes
-        rigid = support == np.inf
-        some = bool(rigid.any())
-        node, spring = (network.supports.node[~rigid], support[~rigid]) if some else (network.supports.node, support)
-        diagonal: Floats = np.zeros(n)
-        if node.size:
-            diagonal += np.bincount(node, weights=spring, minlength=n)
+        self.holds = holds = Holds(network, support)
+        diagonal = np.zeros((1, n))
+        if holds.n_springs:
+            holds.add_springs(diagonal, holds.stiffness[None, :])
+        diagonal = diagonal[0]
         self.links = layout.to_links(bar)
         if layout.chain:
             diagonal[:-1] += self.links
@@ -102,19 +102,18 @@ class Assembly:
         else:
             diagonal += np.bincount(network.bars.start, weights=bar, minlength=n)
             diagonal += np.bincount(network.bars.end, weights=bar, minlength=n)
-        held = network.supports.node[rigid]
-        self.fixed = np.zeros(n, dtype=bool)
-        self.fixed[held] = True
+        held = holds.rigid_node
         if left_out.any():
-            self.fixed |= left_out[network.node_member]
-            held = np.flatnonzero(self.fixed)
+            held = np.union1d(held, np.flatnonzero(left_out[network.node_member]))
         diagonal[held] = 1.0
         if layout.chain:
             coupling = -self.links
             coupling[held[held < n - 1]] = 0.0
             coupling[held[held > 0] - 1] = 0.0
             return self._whole.factor(diagonal, coupling) - 1
-        apart = self.fixed[network.bars.start] | self.fixed[network.bars.end]
+        fixed = np.zeros(n, dtype=bool)
+        fixed[held] = True
+        apart = fixed[network.bars.start] | fixed[network.bars.end]
         coupling = np.where(apart, 0.0, -bar)
         for block in self._blocks:
             row = block.factors.factor(diagonal[block.nodes], coupling[block.bars])

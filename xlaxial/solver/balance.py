@@ -8,7 +8,8 @@ import numpy as np
 
 from xlaxial.arrays import Flags, Floats, Ints
 from xlaxial.model.network import Bars, Network, Supports
-from xlaxial.solver.layout import Layout, largest_at
+from xlaxial.solver.holds import Holds
+from xlaxial.solver.layout import CHUNK, Layout, largest_at
 
 _LONG = 1000  # nodes of a chain from which what is out of balance is added up with its signs
 _FAINT = 1e-20  # forces below this part of stiffness times displacement are rounding, even of two doubles
@@ -62,17 +63,17 @@ class Equations:
 
     def finite(self) -> Flags | None:
         """Members whose numbers are finite and no stiffness below zero, (n_members,); None where all are so."""
-        springs = np.where(self.network.supports.stiffness == np.inf, 0.0, self.network.supports.stiffness)
+        supports = self.network.supports
         given = [v for v in (self.free, self.span, self.force, self.settlement) if v is not None]
         with np.errstate(all="ignore"):  # what is not finite is sought
-            total = sum(float(v.sum()) for v in (self.bar, springs, *given))
-            if np.isfinite(total) and bool((self.bar >= 0.0).all()) and bool((springs >= 0.0).all()):
+            total = sum(float(v.sum()) for v in (self.bar, *given))
+            if np.isfinite(total) and self.bar.min(initial=0.0) >= 0.0 and supports.stiffness.min(initial=0.0) >= 0.0:
                 return None
         network = self.network
         good = np.ones(network.n_members, dtype=bool)
         good[network.bars.member[~(np.isfinite(self.bar) & (self.bar >= 0.0))]] = False
-        good[network.node_member[network.supports.node[~(springs >= 0.0)]]] = False
-        own_support = network.node_member[network.supports.node]
+        good[network.node_member[supports.node[~(supports.stiffness >= 0.0)]]] = False
+        own_support = network.node_member[supports.node]
         for values, own in (
             (self.free, network.bars.member),
             (self.span, network.bars.member),
@@ -95,24 +96,26 @@ class Balance:
         That of its network.
     links : Floats
         (n_links,) N/m, stiffness of the layout's links.
+    holds : Holds
+        Supports of the network.
     """
 
-    def __init__(self, equations: Equations, layout: Layout, links: Floats) -> None:
-        self.layout, self.links = layout, links
-        self._force = equations.force
-        self.free = None if equations.free is None else layout.to_links(equations.free)
+    def __init__(self, equations: Equations, layout: Layout, links: Floats, holds: Holds) -> None:
+        self.layout, self._links, self.holds = layout, links, holds
+        self._equations = equations
+        self._free = None if equations.free is None else layout.to_links(equations.free)
         self._span = None if equations.span is None else layout.to_links(equations.span)
         supports = equations.network.supports
-        rigid = supports.stiffness == np.inf
-        self._rigid, self._spring = np.flatnonzero(rigid), np.flatnonzero(~rigid)
-        self._rigid_node, self._spring_node = supports.node[self._rigid], supports.node[self._spring]
-        self._repeated = bool((self._spring_node[1:] <= self._spring_node[:-1]).any())
-        self._stiffness = supports.stiffness[self._spring]
-        self._own = equations.network.node_member[supports.node]
+        self._own = np.zeros(1, dtype=np.int64)
+        if layout.n_members > 1:
+            self._own = equations.network.node_member.take(supports.node)
         moved = equations.settlement
-        self._settled = None if moved is None or not self._spring.size else moved.take(self._spring, axis=1)
-        self.start = self.end = self.scale = np.zeros((0, 0))
-        self.reaction = np.zeros((equations.force.shape[0], self._own.size))
+        self._settled = None if moved is None or not holds.n_springs else holds.of_springs(moved)
+        cases = equations.force.shape[0]
+        self.start = np.empty((cases, layout.n_links))  # (n_cases, n_links) N, force at the start of each link
+        self.end = self.start if self._span is None else np.empty_like(self.start)
+        self.reaction = np.empty((cases, holds.size))  # (n_cases, n_supports) N
+        self.scale = np.zeros((cases, layout.n_members))  # (n_cases, n_members) N, largest |force|
 
     def check(self, u: Floats, low: Floats | None = None) -> Floats:
         """Form all forces of the state u + low and return what is out of balance at the nodes.
@@ -127,55 +130,58 @@ class Balance:
         Floats
             (n_cases, n_nodes) N, zero at rigid supports: their reactions are what balance asks.
         """
-        stretch = self._stretch(u, low)
-        stretch *= self.links
-        self.start = stretch
-        self.end = stretch if self._span is None else stretch - self._span
-        out = self._force.copy()
-        self.layout.pull(out, self.start, self.end)
-        if self._rigid.size + self._spring.size:
-            self.reaction = np.empty((u.shape[0], self._own.size))
-        if self._spring.size:
+        if self.layout.chain:
+            out = np.empty_like(u)
+            for case in range(u.shape[0]):
+                self._along(out, u, low, case)
+        else:
+            out = self._equations.force.copy()
+            (left, right), lows = self.layout.ends(u), None if low is None else self.layout.ends(low)
+            _stretch(left, right, self._free, lows, self.start)
+            self.start *= self._links
+            if self._span is not None:
+                np.subtract(self.start, self._span, out=self.end)
+            self.layout.pull(out, self.start, self.end)
+        if self.holds.n_springs:
             self._add_springs(out, u, low)
-        if self._rigid.size:
-            self.reaction[:, self._rigid] = -out[:, self._rigid_node]
-            out[:, self._rigid_node] = 0.0
+        if self.holds.rigid.size:
+            self.reaction[:, self.holds.rigid] = -out[:, self.holds.rigid_node]
+            out[:, self.holds.rigid_node] = 0.0
         return out
 
-    def _stretch(self, u: Floats, low: Floats | None) -> Floats:
-        """Elongation of the links less their free lengthening."""
-        left, right = self.layout.ends(u)
-        out: Floats = right - left  # rounded in its own last digit: never worse than a bar longer by as much
-        if low is None:
-            if self.free is not None:
-                out -= self.free
-            return out
-        if self.free is not None:  # both subtractions without loss: Knuth, TAOCP vol. 2, 4.2.2, theorem B
-            lost = _lost(right, left, out)
-            less = out - self.free
-            lost += _lost(out, self.free, less)
-            out = less
-            out += lost
-        out += self.layout.rise(low)
-        return out
+    def _along(self, out: Floats, u: Floats, low: Floats | None, case: int) -> None:
+        """Bar forces of a case and what they and the loads leave out of balance, along chains, part by part."""
+        n, force, start, end = self.layout.n_links, self._equations.force[case], self.start[case], self.end[case]
+        row, moved, left, before = out[case], u[case], None if low is None else low[case], 0.0
+        for a in range(0, n, CHUNK):
+            b = min(a + CHUNK, n)
+            pull, push = start[a:b], end[a:b]
+            free = None if self._free is None else self._free[case, a:b]
+            lows = None if left is None else (left[a:b], left[a + 1 : b + 1])
+            _stretch(moved[a:b], moved[a + 1 : b + 1], free, lows, pull)
+            pull *= self._links[a:b]
+            if self._span is not None:
+                np.subtract(pull, self._span[case, a:b], out=push)
+            np.add(force[a:b], pull, out=row[a:b])
+            row[a] -= before
+            row[a + 1 : b] -= push[:-1]
+            before = push[-1]
+        row[n] = force[n] - before
 
     def _add_springs(self, out: Floats, u: Floats, low: Floats | None) -> None:
         """Add reactions of springs to nodal forces."""
-        moved = u.take(self._spring_node, axis=1)
+        moved = self.holds.at_springs(u)
         if self._settled is not None:
             moved -= self._settled
         if low is not None:
-            moved += low.take(self._spring_node, axis=1)
-        moved *= -self._stiffness
-        if not self._rigid.size:
+            moved += self.holds.at_springs(low)
+        moved *= self.holds.stiffness
+        np.negative(moved, out=moved)
+        if self.holds.spring is None:
             self.reaction = moved
         else:
-            self.reaction[:, self._spring] = moved
-        if not self._repeated:
-            out[:, self._spring_node] += moved
-            return
-        for row, own in zip(out, moved, strict=True):
-            np.add.at(row, self._spring_node, own)
+            self.reaction[:, self.holds.spring] = moved
+        self.holds.add_springs(out, moved)
 
     def measure(self, out: Floats, trusted: float, u: Floats | None = None) -> Floats:
         """Bound of the error of any force relative to the largest |force| of its member, (n_cases, n_members).
@@ -195,44 +201,66 @@ class Balance:
             (n_cases, n_nodes) m; given, forces that are rounding of stiffness times displacement count as none.
         """
         layout = self.layout
-        most = layout.member_most(np.abs(self.start))
+        most = layout.bar_most(self.start)
         if self._span is not None:
-            np.maximum(most, layout.member_most(np.abs(self.end)), out=most)
-        if self._own.size:
-            size = np.abs(self.reaction)
+            np.maximum(most, layout.bar_most(self.end), out=most)
+        if self.holds.size:
             if layout.n_members == 1:
-                np.maximum(most, size.max(axis=1, keepdims=True), out=most)
+                np.maximum(most, np.abs(self.reaction).max(axis=1, keepdims=True), out=most)
             else:
-                largest_at(most, self._own, size)
-        if u is not None:
-            left, right = layout.ends(np.abs(u))
-            np.maximum(most, _FAINT * layout.member_most(self.links * np.maximum(left, right)), out=most)
-            if self._settled is not None:
-                faint = largest_at(
-                    np.zeros_like(most), self._own[self._spring], self._stiffness * np.abs(self._settled)
-                )
-                np.maximum(most, _FAINT * faint, out=most)
+                largest_at(most, self._own, np.abs(self.reaction))
         self.scale = np.maximum(most, _LEAST, out=most)
-        bound = layout.member_sums(np.abs(out)) / self.scale
+        left = self._left(out, trusted)
+        if u is None or bool((left <= trusted * self.scale).all()):
+            return left / self.scale
+        ends = layout.ends(np.abs(u))
+        np.maximum(most, _FAINT * layout.bar_most(self._links * np.maximum(*ends)), out=most)
+        if self._settled is not None:
+            faint = _FAINT * np.abs(self.holds.stiffness * self._settled)
+            own = self._own if layout.n_members > 1 else np.zeros(self.holds.size, dtype=np.int64)
+            largest_at(most, own if self.holds.spring is None else own[self.holds.spring], faint)
+        return left / self.scale
+
+    def _left(self, out: Floats, trusted: float) -> Floats:
+        """Bound of the error of any force, (n_cases, n_members) N."""
+        layout = self.layout
+        if layout.single and layout.n_nodes > _LONG:
+            return np.array([[_spread_of_sums(row)] for row in out])
+        left = layout.node_sums(np.abs(out))
         if layout.chain and layout.n_nodes > _LONG:
-            for member in np.flatnonzero((bound > trusted).any(axis=0)).tolist():
-                a = int(layout.first[member])
-                b = int(layout.first[member + 1]) if member + 1 < layout.first.size else layout.n_nodes
-                if b - a > _LONG:
-                    sums = np.cumsum(out[:, a:b], axis=1)
-                    spread = np.maximum(sums.max(axis=1), 0.0) - np.minimum(sums.min(axis=1), 0.0)
-                    bound[:, member] = spread / self.scale[:, member]
-        return bound
+            last = np.append(layout.first[1:], layout.n_nodes)
+            poor = (left > trusted * self.scale).any(axis=0) & (last - layout.first > _LONG)
+            for member in np.flatnonzero(poor).tolist():
+                for case, row in enumerate(out):
+                    left[case, member] = _spread_of_sums(row[layout.first[member] : last[member]])
+        return left
 
     def overall(self) -> Floats:
         """Sum of all reactions and loads of each member relative to its largest |force|, (n_cases, n_members)."""
-        layout = self.layout
-        total = layout.member_sums(self._force)
-        if self._span is not None:
-            total += layout.bar_sums(self._span)
-        for row, reaction in zip(total, self.reaction, strict=True):
-            row += np.bincount(self._own, weights=reaction, minlength=layout.n_members)
+        layout, equations = self.layout, self._equations
+        total = layout.node_sums(equations.force)
+        if equations.span is not None:
+            total += layout.bar_sums(equations.span)
+        if layout.n_members == 1:
+            total += self.reaction.sum(axis=1, keepdims=True)
+        else:
+            for row, reaction in zip(total, self.reaction, strict=True):
+                row += np.bincount(self._own, weights=reaction, minlength=layout.n_members)
         return np.abs(total) / self.scale
+
+
+def _stretch(left: Floats, right: Floats, free: Floats | None, lows: tuple[Floats, Floats] | None, out: Floats) -> None:
+    """Elongation less free lengthening from displacements at both ends, into `out`; without rounding given `lows`."""
+    np.subtract(right, left, out=out)  # rounded in its own last digit: never worse than a bar longer by as much
+    if lows is None:
+        if free is not None:
+            out -= free
+        return
+    if free is not None:  # both subtractions without loss: Knuth, TAOCP vol. 2, 4.2.2, theorem B
+        less = out - free
+        lost = _lost(right, left, out) + _lost(out, free, less)
+        np.add(less, lost, out=out)
+    out += lows[1] - lows[0]
 
 
 def _lost(a: Floats, b: Floats, difference: Floats) -> Floats:
@@ -240,3 +268,13 @@ def _lost(a: Floats, b: Floats, difference: Floats) -> Floats:
     back = a - difference
     out: Floats = (a - (difference + back)) + (back - b)
     return out
+
+
+def _spread_of_sums(values: Floats) -> float:
+    """Largest less least partial sum, that of nothing included."""
+    total = most = least = 0.0
+    for a in range(0, values.size, CHUNK):
+        sums = np.cumsum(values[a : a + CHUNK])
+        most, least = max(most, total + float(sums.max())), min(least, total + float(sums.min()))
+        total += float(sums[-1])
+    return most - least

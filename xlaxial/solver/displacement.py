@@ -13,13 +13,12 @@ from xlaxial.solver.assembly import Assembly
 from xlaxial.solver.balance import Balance, Equations
 from xlaxial.solver.dominant import MOST_NODES, Dominant
 from xlaxial.solver.flexibility import flexibility, load_lever
-from xlaxial.solver.layout import in_rows
+from xlaxial.solver.layout import CHUNK, acts, in_rows
 
 TRUSTED = 1e-11  # bound of the error of any force, relative to its member's largest, up to which no more is done
 _TOLERATED = 1e-10  # bound up to which factors free of subtractions are not called in
 _REFUSED = 1e-6  # a member with a larger bound gets nan for every result
 _ROUNDS = 8  # refinements at most; each gains the digits that the factors hold
-_CHUNK = 16384  # entries that are worked on at a time where much is done to each
 
 
 def solve_linear(
@@ -104,20 +103,20 @@ def _equations(network: Network, actions: Actions, preload: Floats | None) -> Eq
     bar = flexibility(bars)
     np.divide(1.0, bar, out=bar)
     free = in_rows(actions.imposed)
-    if preload is not None and preload.any():
+    if preload is not None and acts(preload):
         free = free + preload.T
     span = None
-    if actions.distributed.any():
+    if acts(actions.distributed):
         q = in_rows(actions.distributed)
         free = free - q * load_lever(bars)
         span = q * bars.length
     return Equations(
         network,
         bar,
-        free if free.any() else None,
+        free if acts(free) else None,
         span,
         in_rows(actions.force),
-        in_rows(actions.settlement) if actions.settlement.any() else None,
+        in_rows(actions.settlement) if acts(actions.settlement) else None,
     )
 
 
@@ -132,7 +131,7 @@ def solve_equations(equations: Equations, assembly: Assembly | None = None) -> F
     failed = assembly.factor(equations.bar, network.supports.stiffness)
     if failed.any():
         return _alone(equations, _put_together(equations, Found.empty(equations), ~failed), failed)
-    balance = Balance(equations, assembly.layout, assembly.links)
+    balance = Balance(equations, assembly.layout, assembly.links, assembly.holds)
     u, out = _first(equations, balance, assembly)
     bound = balance.measure(out, TRUSTED)
     poor = _poor(bound, TRUSTED)
@@ -158,11 +157,14 @@ def _first(equations: Equations, balance: Balance, solver: _Solver) -> tuple[Flo
     if equations.settlement is not None:
         rigid = network.supports.stiffness == np.inf
         u[:, network.supports.node[rigid]] = equations.settlement[:, rigid]
-    settled = u if equations.settlement is not None else None
-    u = balance.check(u)
-    solver.solve_rows(u)
-    if settled is not None:
-        u += settled
+    if equations.settlement is None and equations.free is None and equations.span is None:
+        np.copyto(u, equations.force)
+        u[:, balance.holds.rigid_node] = 0.0
+        solver.solve_rows(u)
+        return u, balance.check(u)
+    more = balance.check(u)
+    solver.solve_rows(more)
+    u += more
     return u, balance.check(u)
 
 
@@ -185,15 +187,15 @@ def _refine(balance: Balance, solver: _Solver, u: Floats, out: Floats) -> tuple[
 def _add(high: Floats, low: Floats, more: Floats) -> None:
     """Add to a sum of two doubles in place (Knuth, TAOCP vol. 2, 4.2.2, theorem B)."""
     for h, w, m in zip(high, low, more, strict=True):
-        for a in range(0, h.size, _CHUNK):
-            own, add = h[a : a + _CHUNK], m[a : a + _CHUNK]
+        for a in range(0, h.size, CHUNK):
+            own, add = h[a : a + CHUNK], m[a : a + CHUNK]
             total = own + add
             back = total - own
             add -= back
             own -= total - back
             own += add
-            w[a : a + _CHUNK] += own
-            h[a : a + _CHUNK] = total
+            w[a : a + CHUNK] += own
+            h[a : a + CHUNK] = total
 
 
 def _put_together(equations: Equations, found: Found, members: Flags) -> Found:
@@ -213,7 +215,7 @@ def _alone(equations: Equations, found: Found, members: Flags) -> Found:
         if own.n_nodes <= MOST_NODES:
             solver = Dominant(own, part.bar, own.supports.stiffness)
             assembly = Assembly(own)
-            balance = Balance(part, assembly.layout, assembly.layout.to_links(part.bar))
+            balance = Balance(part, assembly.layout, assembly.layout.to_links(part.bar), assembly.holds)
             u, out = _first(part, balance, solver)
             low, bound = _refine(balance, solver, u, out)
             if (bound <= _REFUSED).all():

@@ -10,6 +10,8 @@ import numpy as np
 from xlaxial.arrays import Floats, Ints
 from xlaxial.model.network import Network
 
+CHUNK = 16384  # entries that are worked on at a time where much is done to each
+
 
 class Layout:
     """Differences along links and sums at nodes and over members.
@@ -29,32 +31,26 @@ class Layout:
         self.n_nodes, self.n_members = network.n_nodes, network.n_members
         self._node_member, self._bar_member = network.node_member, bars.member
         n_bars = bars.start.size
-        self.chain = bool(
-            n_bars
-            and n_bars == self.n_nodes - self.n_members
-            and (bars.end - bars.start == 1).all()
-            and (bars.start[1:] > bars.start[:-1]).all()
-        )
+        self.chain = bool(n_bars) and n_bars == self.n_nodes - self.n_members and _in_order(bars.start, bars.end)
         self.single = self.chain and n_bars == self.n_nodes - 1
-        self.first = np.zeros(1, dtype=np.int64)  # first node of each member, where members stand in order
-        self._ordered = self.n_members == 1
-        if self.n_members != 1 and self.n_nodes:
-            steps = network.node_member[1:] - network.node_member[:-1]
-            self._ordered = bool(
-                network.node_member[0] == 0
-                and ((steps == 0) | (steps == 1)).all()
-                and steps.sum() == self.n_members - 1
-            )
-            self.first = np.append(0, np.flatnonzero(steps) + 1) if self._ordered else self.first
-            self.chain &= self._ordered and int(self.first[-1]) < self.n_nodes - 1
+        self.first = np.zeros(1, dtype=np.int64)  # (n_members,) first node of each, where `chain`
+        if self.n_members > 1 and self.chain:
+            steps = network.node_member[1:] != network.node_member[:-1]
+            self.first = np.append(0, np.flatnonzero(steps) + 1)
+            ordered = bool((network.node_member[self.first] == np.arange(self.first.size)).all())
+            self.chain = ordered and self.first.size == self.n_members
         self.n_links = self.n_nodes - 1 if self.chain else n_bars
 
     def to_links(self, values: Floats) -> Floats:
-        """Spread bar values over links, (..., n_bars) to (..., n_links)."""
+        """Spread bar values over links, (n_bars,) or (n_cases, n_bars)."""
         if not self.chain or self.single:
             return values
         out = np.zeros((*values.shape[:-1], self.n_links))
-        out[..., self.start] = values
+        if values.ndim == 1:
+            out[self.start] = values
+            return out
+        for row, own in zip(out, values, strict=True):
+            row[self.start] = own
         return out
 
     def to_bars(self, values: Floats) -> Floats:
@@ -74,51 +70,46 @@ class Layout:
         return u.take(self.start, axis=1), u.take(self.end, axis=1)
 
     def pull(self, force: Floats, at_start: Floats, at_end: Floats) -> None:
-        """Add to nodal forces, in place, what links of these tensions at their ends exert on the nodes."""
-        if self.chain:
-            force[:, :-1] += at_start
-            force[:, 1:] -= at_end
-            return
+        """Add to nodal forces, in place, what bars of these tensions at their ends exert on the nodes."""
         for row, first, last in zip(force, at_start, at_end, strict=True):
             row += np.bincount(self.start, weights=first, minlength=self.n_nodes)
             row -= np.bincount(self.end, weights=last, minlength=self.n_nodes)
 
-    def member_sums(self, nodal: Floats) -> Floats:
+    def node_sums(self, nodal: Floats) -> Floats:
         """Sums of nodal values over members, (n_cases, n_members)."""
-        if self.n_members == 1:
-            out: Floats = nodal.sum(axis=1, keepdims=True)
-            return out
-        if self._ordered:
-            sums: Floats = np.add.reduceat(nodal, self.first, axis=1)
-            return sums
-        return _sums(nodal, self._node_member, self.n_members)
+        return self._sums(nodal, self._node_member)
 
-    def member_most(self, links: Floats) -> Floats:
-        """Largest of link values (none below zero) over members, (n_cases, n_members)."""
+    def bar_sums(self, values: Floats) -> Floats:
+        """Sums of bar values over members, (n_cases, n_members)."""
+        return self._sums(values, self._bar_member)
+
+    def bar_most(self, links: Floats) -> Floats:
+        """Largest magnitude of link values over members, (n_cases, n_members)."""
         if self.n_members == 1:
-            out: Floats = links.max(axis=1, keepdims=True, initial=0.0)
-            return out
-        if self.chain:
-            most: Floats = np.maximum.reduceat(links, self.first, axis=1)
+            most: Floats = np.maximum(
+                links.max(axis=1, keepdims=True, initial=0.0), -links.min(axis=1, keepdims=True, initial=0.0)
+            )
             return most
-        return largest_at(np.zeros((links.shape[0], self.n_members)), self._bar_member, links)
+        own = self._node_member[:-1] if self.chain else self._bar_member
+        return largest_at(np.zeros((links.shape[0], self.n_members)), own, np.abs(links))
 
-    def bar_sums(self, links: Floats) -> Floats:
-        """Sums of link values over members, (n_cases, n_members)."""
+    def _sums(self, values: Floats, at: Ints) -> Floats:
         if self.n_members == 1:
-            out: Floats = links.sum(axis=1, keepdims=True)
-            return out
-        if self.chain:
-            sums: Floats = np.add.reduceat(links, self.first, axis=1)
-            return sums
-        return _sums(links, self._bar_member, self.n_members)
+            total: Floats = values.sum(axis=1, keepdims=True)
+            return total
+        out = np.empty((values.shape[0], self.n_members))
+        for row, own in zip(out, values, strict=True):
+            row[:] = np.bincount(at, weights=own, minlength=self.n_members)
+        return out
 
 
-def _sums(values: Floats, at: Ints, size: int) -> Floats:
-    out = np.zeros((values.shape[0], size))
-    for row, own in zip(out, values, strict=True):
-        row += np.bincount(at, weights=own, minlength=size)
-    return out
+def _in_order(start: Ints, end: Ints) -> bool:
+    """Whether every bar ends at the node after its start, and each starts further on than the one before."""
+    for a in range(0, start.size, CHUNK):
+        own = start[a : a + CHUNK + 1]
+        if not ((end[a : a + CHUNK] - own[:CHUNK] == 1).all() and (own[1:] > own[:-1]).all()):
+            return False
+    return True
 
 
 def largest_at(out: Floats, at: Ints, values: Floats) -> Floats:
@@ -131,3 +122,8 @@ def largest_at(out: Floats, at: Ints, values: Floats) -> Floats:
 def in_rows(values: Floats) -> Floats:
     """Turn values with a column per case into rows per case, contiguous."""
     return np.ascontiguousarray(values.T)
+
+
+def acts(values: Floats) -> bool:
+    """Whether any value is not zero (nan is not)."""
+    return bool(values.size) and not (values.max() == 0.0 == values.min())
