@@ -6,10 +6,10 @@ from dataclasses import dataclass, replace
 from functools import lru_cache
 from typing import Any
 
-from xlaxial.cells import CellError, cell_address
+from xlaxial.cells import CellError, CellRange, cell_address
 from xlaxial.problems import Problem, UnitError
 from xlaxial.tables.headings import TABLES, TableKind, Term
-from xlaxial.tables.settings import Settings
+from xlaxial.tables.settings import DEFAULTS, Settings
 from xlaxial.units import Unit, heading_forms, is_unit, normal, strip_brackets, unit
 
 _SEARCHED_ROWS = 40  # title rows above the headings are passed over so far down
@@ -83,7 +83,19 @@ def _mapped(kind: TableKind, settings: Settings) -> dict[str, Term]:
     return out
 
 
-def find_layout(block: Any, kind: TableKind, settings: Settings, *, first: bool = True) -> Layout:
+@lru_cache(maxsize=256)
+def _remembered(kind: str, mapped: tuple[tuple[str, str], ...], place: Any, rows: tuple[tuple[Any, ...], ...]) -> Layout:
+    block = CellRange(rows, *place) if place else list(rows)
+    return find_layout(block, TABLES[kind], replace(DEFAULTS, headings=mapped))
+
+
+def headings_alone(rows: Any, kind: str, settings: Settings) -> Layout:
+    """Return the layout of headings that are handed over without their rows; remembered, for calls of one row each."""
+    place = (rows.sheet, rows.row, rows.column) if isinstance(rows, CellRange) else None
+    return _remembered(kind, settings.headings, place, tuple(map(tuple, rows)))
+
+
+def find_layout(block: Any, kind: TableKind, settings: Settings) -> Layout:
     """Find the heading row of a block and read it.
 
     Parameters

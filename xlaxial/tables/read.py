@@ -14,7 +14,7 @@ from xlaxial.cells import CellRange, cell_address
 from xlaxial.problems import Problem
 from xlaxial.tables.columns import Numbers, read_counts, read_labels, read_numbers
 from xlaxial.tables.headings import TABLES
-from xlaxial.tables.layout import Layout, find_layout
+from xlaxial.tables.layout import Layout, find_layout, headings_alone
 from xlaxial.tables.settings import Settings
 from xlaxial.units import normal
 
@@ -119,7 +119,7 @@ def read_table(block: Any, kind: str, settings: Settings, headings: Any = None) 
     """
     n_block = trimmed(block)
     if headings is not None:
-        layout = replace(find_layout(headings, TABLES[kind], settings), first_row=0)
+        layout = replace(headings_alone(headings, kind, settings), first_row=0)
     else:
         layout = find_layout(block, TABLES[kind], settings)
     first = layout.first_row

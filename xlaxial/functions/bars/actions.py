@@ -34,22 +34,25 @@ def read_actions(inputs: Inputs) -> RowActions:
     """
     table, members = inputs.segments, inputs.members
     n_rows, n_cases = table.n_rows, 1
-    columns = {name: table.values(name)[:, None].repeat(n_cases, axis=1) for name in _ON_SEGMENT}
+    columns = {name: np.repeat(table.values(name), n_cases).reshape(n_rows, n_cases) for name in _ON_SEGMENT}
     preloaded = table.present("Preload").copy()
-    settlement = inputs.supports.table.values("Settlement")[inputs.supports.rows][:, None].repeat(n_cases, axis=1)
+    settlement = inputs.supports.table.values("Settlement")[inputs.supports.rows].repeat(n_cases).reshape(-1, n_cases)
     slip = table.values("Lock-off slip")
     force_rows, force = _add_loads(inputs, columns, preloaded, settlement)
-    for i in np.flatnonzero((slip != 0.0) & ~preloaded & (members.row_member >= 0)).tolist():
+    slipping = bool(slip.any())
+    for i in np.flatnonzero((slip != 0.0) & ~preloaded & (members.row_member >= 0)).tolist() if slipping else ():
         problem = Problem("Lock-off slip stands without Preload", "write the Preload, or clear the slip")
         members.fail_row(table, i, problem, "Lock-off slip", int(members.row_member[i]))
     alpha, length = inputs.sections.alpha, inputs.sections.length
     hot = (columns["dT"] != 0.0).any(axis=1)
-    for i in np.flatnonzero(hot & np.isnan(alpha) & (members.row_member >= 0)).tolist():
+    unknown = np.isnan(alpha)
+    for i in np.flatnonzero(hot & unknown & (members.row_member >= 0)).tolist() if unknown.any() else ():
         problem = Problem("the segment has a dT but no Alpha", "fill in Alpha, or a Material that has one")
         members.fail_row(table, i, problem, "Alpha" if table.layout.has("Alpha") else "dT", int(members.row_member[i]))
-    strain = np.nan_to_num(alpha)[:, None] * columns["dT"] + columns["Imposed strain"]
-    imposed = strain * np.nan_to_num(length)[:, None] + columns["Misfit"]
-    imposed += (np.sign(columns["Preload"]) * slip[:, None]) if slip.any() else 0.0
+    strain = np.where(unknown, 0.0, alpha)[:, None] * columns["dT"] + columns["Imposed strain"]
+    imposed = strain * np.where(np.isnan(length), 0.0, length)[:, None] + columns["Misfit"]
+    if slipping:
+        imposed += np.sign(columns["Preload"]) * slip[:, None]
     return RowActions(force_rows, force, columns["q"], imposed, columns["Preload"], preloaded, settlement)
 
 

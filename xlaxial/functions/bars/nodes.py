@@ -91,7 +91,7 @@ def number_nodes(table: Table, members: Members, length: Floats) -> Nodes:
         end, labels = start + 1, None
         node_member = np.repeat(np.arange(members.count), count + 1)
         chain = np.ones(members.count, dtype=bool)
-    lengths = np.nan_to_num(length[rows]).astype(np.longdouble)  # long sums of many members lose no digits of one
+    lengths = np.where(np.isnan(length), 0.0, length)[rows].astype(np.longdouble)  # long sums of many members lose no digits of one
     ends = np.cumsum(lengths)
     from_start = ends - lengths
     if rows.size:

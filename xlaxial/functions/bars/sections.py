@@ -36,6 +36,8 @@ def read_sections(table: Table, members: Members) -> Sections:
     rows = members.row_member >= 0
 
     def fail(mask: Flags, term: str | None, what: str, remedy: str) -> None:
+        if not mask.any():
+            return
         for i in np.flatnonzero(mask & rows).tolist():
             if i not in table.wrong:
                 members.fail_row(table, i, Problem(what, remedy), term, int(members.row_member[i]))

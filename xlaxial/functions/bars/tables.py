@@ -11,12 +11,14 @@ from xlaxial.arrays import Flags, Ints
 from xlaxial.functions.bars.members import Members, find_members, rows_of_members
 from xlaxial.functions.bars.nodes import Nodes, Places, find_places, number_nodes
 from xlaxial.functions.bars.sections import Sections, read_sections
+from xlaxial.functions.memory import Memory, content_key
 from xlaxial.problems import Problem
 from xlaxial.tables.headings import TABLES
 from xlaxial.tables.layout import Layout
 from xlaxial.tables.read import Table, read_table
 from xlaxial.tables.settings import Settings
 
+_SHARED: Memory[Table] = Memory(32)
 LATER = "is not solved by this version"
 
 
@@ -78,8 +80,8 @@ def read_inputs(segments: Any, supports: Any, loads: Any, settings: Settings, he
     sections = read_sections(table, members)
     nodes = number_nodes(table, members, sections.length)
     one_row = headings is not None
-    support_table = _optional(supports, "supports", settings)
-    load_table = _optional(loads, "loads", settings)
+    support_table = _optional(supports, "supports", settings, one_row)
+    load_table = _optional(loads, "loads", settings, one_row)
     placed_supports = _place(support_table, members, nodes, sections, one_row)
     _check_supports(placed_supports, members)
     placed_loads = _place(load_table, members, nodes, sections, one_row)
@@ -95,11 +97,15 @@ def read_inputs(segments: Any, supports: Any, loads: Any, settings: Settings, he
     return Inputs(settings, table, members, sections, nodes, placed_supports, placed_loads, cases, tuple(remarks))
 
 
-def _optional(block: Any, kind: str, settings: Settings) -> Table:
-    """Read a table that may be left out."""
+def _optional(block: Any, kind: str, settings: Settings, one_row: bool) -> Table:
+    """Read a table that may be left out; calls of one row each share what they read."""
     if block is None:
         return Table(kind, [], Layout(0, 0, {}), 0)
-    return read_table(block, kind, settings)
+    if not one_row:
+        return read_table(block, kind, settings)
+    key = (kind, settings.headings, settings["Blank mark"], settings["Decimal mark"], content_key(block))
+    table = _SHARED.get(key, lambda: read_table(block, kind, settings))
+    return replace(table, wrong=dict(table.wrong), problems=list(table.problems))
 
 
 def _place(table: Table, members: Members, nodes: Nodes, sections: Sections, one_row: bool) -> Placed:
@@ -126,6 +132,9 @@ def _refuse_laws(table: Table, members: Members, rows: Ints | None = None, own: 
         rows = np.flatnonzero(members.row_member >= 0)
         own = members.row_member[rows]
 
+    if not table.layout.has("Gap", "Slack", "Slip force", "Works in", "Side", "Stage", "Remove"):
+        return
+
     def refuse(mask: Flags, term: str, what: str) -> None:
         for k in np.flatnonzero(mask[rows]).tolist():
             problem = Problem(f"{what} {LATER}", f"clear {term}, or leave the member out")
@@ -147,8 +156,6 @@ def _check_supports(placed: Placed, members: Members) -> None:
     """Refuse rows without a place, and two rigid supports at one place."""
     table, places = placed.table, placed.places
     if not placed.rows.size:
-        if not table.unusable:
-            return
         return
     nowhere = (places.node < 0) & (places.segment < 0)
     for k in np.flatnonzero(nowhere).tolist():
@@ -158,9 +165,8 @@ def _check_supports(placed: Placed, members: Members) -> None:
             members.fail_row(table, row, problem, "Node" if table.layout.has("Node") else "x", int(placed.member[k]))
     rigid = ~table.present("Stiffness")[placed.rows] & ~nowhere
     seen: dict[tuple[int, int, float], int] = {}
-    node, segment, x = places.node[rigid], places.segment[rigid], places.x[rigid]
-    at_node = np.unique(node[node >= 0], return_counts=True)[1]
-    if not bool((at_node > 1).any()) and not bool((segment >= 0).any()):
+    node = places.node[rigid]
+    if not bool((places.segment >= 0).any()) and np.unique(node).size == node.size:
         return
     for k in np.flatnonzero(rigid).tolist():
         inside = places.segment[k] >= 0

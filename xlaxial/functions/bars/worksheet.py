@@ -22,6 +22,7 @@ from xlaxial.tables.wanted import Wanted, read_wanted
 
 SOLVED: Memory[tuple[Solution, SegmentResults]] = Memory(16)
 _READ: Memory[Settings] = Memory(16)
+_ASKED: Memory[Wanted] = Memory(64)
 
 _METRIC = {"force": "kN", "stress": "MPa", "length": "mm", "strain": "µε", "line load": "kN/m"}
 _CUSTOMARY = {"force": "kip", "stress": "ksi", "length": "in", "strain": "µε", "line load": "kip/ft"}
@@ -83,8 +84,11 @@ def _standard(solution: Solution, names: Sequence[str], dimensions: dict[str, st
 
 def _wanted(function: str, wanted: Any, solution: Solution, standard: Sequence[str]) -> Wanted:
     words = load()[function].words
+    known = solution.inputs.settings
+    if isinstance(wanted, str) and wanted.strip():
+        return _ASKED.get((function, wanted, known.headings), lambda: read_wanted(wanted, words, (), known))
     headings = _standard(solution, standard, {word.name: word.dimension for word in words})
-    return read_wanted(wanted, words, headings, solution.inputs.settings)
+    return read_wanted(wanted, words, headings, known)
 
 
 def _by_segment(function: str, standard: Sequence[str], arguments: tuple[Any, ...]) -> list[list[Any]]:
