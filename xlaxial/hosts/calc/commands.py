@@ -60,6 +60,8 @@ def install(profile: Path | None = None) -> int:
             with tempfile.TemporaryDirectory() as folder:
                 packed = pack(_write(Path(folder) / _FOLDER), Path(folder) / f"{_FOLDER}.oxt")
                 Path(folder).chmod(0o755)
+                if _own(place):  # overwritten alone, its functions stay unknown
+                    _unopkg(office, place, "remove", IDENTIFIER)
                 _unopkg(office, place, "add", "--force", "--suppress-license", str(packed))
     except (OfficeError, OSError) as wrong:
         print(f"not installed: {wrong}", file=sys.stderr)
@@ -151,9 +153,15 @@ def _unopkg(office: Office, profile: Path, *arguments: str) -> None:
 
 def _installed(office: Office, profile: Path | None) -> Path | None:
     """Return the folder of the installed extension: the user's own, else the machine's."""
-    own = (profile or default_profile()) / "user" / "uno_packages" / "cache" / "uno_packages"
-    for config in [*own.glob("*/*/config.json"), office.extensions / _FOLDER / "config.json"]:
-        if config.exists() and _config(config.parent).get("implementation", "").startswith(IDENTIFIER):
+    everyone = office.extensions / _FOLDER
+    return _own(profile or default_profile()) or (everyone if (everyone / "config.json").exists() else None)
+
+
+def _own(profile: Path) -> Path | None:
+    """Return the folder of the extension in a profile."""
+    packages = profile / "user" / "uno_packages" / "cache" / "uno_packages"
+    for config in packages.glob("*/*/config.json"):
+        if str(_config(config.parent).get("implementation", "")).startswith(IDENTIFIER):
             return config.parent
     return None
 
