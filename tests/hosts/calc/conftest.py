@@ -14,6 +14,7 @@ sys.path.append(str(HERE))  # the helpers beside this file, by their own names
 import calc_functions  # noqa: E402 - found by the line above
 from calc_live import LiveOffice, office_python  # noqa: E402 - as above
 
+from xlaxial.functions.registry import load  # noqa: E402 - as above
 from xlaxial.hosts.calc.extension import OFFICE_LEAST, Source, package_folders, write_extension  # noqa: E402 - as above
 from xlaxial.hosts.calc.office import Office, convert, find_office  # noqa: E402 - as above
 
@@ -60,6 +61,20 @@ def live(office: Office, extensions: Path, tmp_path_factory: pytest.TempPathFact
         _absent("no Python here can import UNO")
     assert python is not None
     running = LiveOffice(office, tmp_path_factory.mktemp("live"), extensions, python)
+    yield running
+    running.stop()
+
+
+@pytest.fixture(scope="session")
+def product(office: Office, tmp_path_factory: pytest.TempPathFactory) -> Iterator[LiveOffice]:
+    """A running office with the product's own functions, as `xlaxial calc install` makes them."""
+    python = office_python(office)
+    if python is None:
+        _absent("no Python here can import UNO")
+    assert python is not None
+    folder = tmp_path_factory.mktemp("product")
+    write_extension(folder / "xlaxial", list(load().values()), Source(folders=package_folders()))
+    running = LiveOffice(office, tmp_path_factory.mktemp("user"), folder, python)
     yield running
     running.stop()
 
