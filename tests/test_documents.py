@@ -35,7 +35,11 @@ def test_the_readme_and_about_show_the_caution() -> None:
 
 def test_the_readmes_first_formula_gives_the_numbers_that_it_says() -> None:
     text = README.read_text(encoding="utf-8")
-    segments = [["Length (mm)", "Area (mm2)", "E (GPa)", "Alpha (1e-6/K)", "dT (K)"], [1200, 600, 205, 12, 15], [800, 450, 205, 12, 15]]
+    segments = [
+        ["Length (mm)", "Area (mm2)", "E (GPa)", "Alpha (1e-6/K)", "dT (K)"],
+        [1200, 600, 205, 12, 15],
+        [800, 450, 205, 12, 15],
+    ]
     supports = [["Node", "Stiffness (kN/mm)"], [0, None], [2, 40]]
     force = AX_FORCES(segments, supports, None, "kN")[0][0]
     reactions = AX_REACTIONS(segments, supports, None, "kN")
@@ -47,18 +51,28 @@ def test_the_readmes_first_formula_gives_the_numbers_that_it_says() -> None:
 def test_every_function_is_declared_for_every_host(name: str) -> None:
     function = load()[name]
     assert re.fullmatch(r"AX_[A-Z]+", name)
-    assert function.summary.isascii() and len(function.summary) <= 255
+    assert function.summary.isascii()
+    assert len(function.summary) <= 255
     assert len(function.arguments) <= 60
     for argument in function.arguments:
-        assert argument.name.isidentifier() and argument.name.lower() not in ("case", "loop", "next", "class", "property")
-        assert argument.help.isascii() and len(argument.help) <= 255
+        assert argument.name.isidentifier()
+        assert argument.name.lower() not in (
+            "case",
+            "loop",
+            "next",
+            "class",
+            "property",
+        )
+        assert argument.help.isascii()
+        assert len(argument.help) <= 255
     for word in function.words:
         assert word.dimension in DIMENSIONS or word.dimension in ("text", "count", "flag")
     assert callable(function.implementation())
     assert caller(name).__name__ == name
     assert function.example.startswith(f"={name}(")
     shown = page(name)
-    assert function.summary.split(".")[0][:40] in shown.replace("\n", " ") and all(word.name in shown for word in function.words)
+    assert function.summary.split(".")[0][:40] in shown.replace("\n", " ")
+    assert all(word.name in shown for word in function.words)
     assert name in listing()
 
 

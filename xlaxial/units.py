@@ -59,9 +59,15 @@ _SAME_FORCE = frozenset({"density"})  # dimensions in which lb, kg and t are mas
 
 # spelling -> name in the definitions file
 _SPELLINGS = {
-    **{name: name for name in ("m", "mm", "cm", "um", "micron", "in", "inch", "inches", "ft", "feet", "foot", "mil", "uin")},
+    **{
+        name: name
+        for name in ("m", "mm", "cm", "um", "micron", "in", "inch", "inches", "ft", "feet", "foot", "mil", "uin")
+    },
     **{name: name for name in ("K", "degC", "degF", "N", "kN", "MN", "kgf", "tf", "lbf", "kip", "kips")},
-    **{name: name for name in ("Pa", "kPa", "MPa", "GPa", "bar", "psi", "ksi", "pcf", "pci", "plf", "klf", "rad", "deg")},
+    **{
+        name: name
+        for name in ("Pa", "kPa", "MPa", "GPa", "bar", "psi", "ksi", "pcf", "pci", "plf", "klf", "rad", "deg")
+    },
     **{name: name for name in ("ppm", "microstrain")},
     "in": "inch",
     "um": "micrometer",
@@ -98,7 +104,9 @@ _REFUSED = {
     "M": "write MPa, MN or m",
 }
 _TOKEN = re.compile(r"\s*(?:([A-Za-zε°%‰\"']+)\s*(?:\^|\*\*)?(-?\d+)?|([*/() ])|(-)(?=\s*[A-Za-z]))")
-_POWER_OF_TEN = re.compile(r"^\s*[x×*]?\s*(?:10\s*(?:\^|\*\*)?\s*\(?(-?\d{1,2})\)?|1(?:\.0*)?[eE]([+-]?\d{1,2}))(?=\s*[*/A-Za-z°]|$)\s*\*?\s*")
+_POWER_OF_TEN = re.compile(
+    r"^\s*[x×*]?\s*(?:10\s*(?:\^|\*\*)?\s*\(?(-?\d{1,2})\)?|1(?:\.0*)?[eE]([+-]?\d{1,2}))(?=\s*[*/A-Za-z°]|$)\s*\*?\s*"
+)
 
 
 @cache
@@ -121,7 +129,7 @@ def _plain(text: str) -> str:
         text = text.replace(old, new)
     text = re.sub(r"^\(-\)$", "-", text)
     text = re.sub(r"°\s+([CFK])", r"°\1", text)
-    text = text[:-1] if text.endswith("in.") or text.endswith("ft.") else text
+    text = text[:-1] if text.endswith(("in.", "ft.")) else text
     return re.sub(r"\b(?:sq\.?|square)\s*(mm|cm|m|in|ft)\b\.?", r"\g<1>2", text)
 
 
@@ -206,10 +214,14 @@ def unit(text: str, dimension: str) -> Unit:
             expression += f" * {_named(name, dimension, shown, remedy)} ** ({sign * exponent})"
     registry = _registry()
     quantity = registry.parse_expression(expression).to_root_units()
-    if quantity.dimensionality != registry.parse_expression(wanted.si).dimensionality or _confused(dimension, above + below):
+    if quantity.dimensionality != registry.parse_expression(wanted.si).dimensionality or _confused(
+        dimension, above + below
+    ):
         actual = _dimension_of(quantity.dimensionality)
         of = f"a unit of {actual}" if actual else "no unit"
-        raise UnitError(f"{shown!r} is {of}, not of {dimension}" if actual else f"{shown!r} is no unit of {dimension}", remedy)
+        raise UnitError(
+            f"{shown!r} is {of}, not of {dimension}" if actual else f"{shown!r} is no unit of {dimension}", remedy
+        )
     return Unit(shown, float(quantity.magnitude))
 
 

@@ -28,7 +28,13 @@ def test_taper_with_distributed_load_spring_and_settlement() -> None:
     assert column(AX_REACTIONS(*tables, "kN")) == [digits(-41.05484, 5), digits(4.05484, 5)]
     wanted = [["Force start (kN)", "Force end (kN)", "Stress start (MPa)", "Stress end (MPa)", "Stress max (MPa)"]]
     first, second = AX_SEGMENTS(*tables, wanted)
-    assert first == [digits(41.05484, 5), digits(9.05484, 5), digits(14.52018, 5), digits(12.80998, 5), digits(15.78398, 5)]
+    assert first == [
+        digits(41.05484, 5),
+        digits(9.05484, 5),
+        digits(14.52018, 5),
+        digits(12.80998, 5),
+        digits(15.78398, 5),
+    ]
     assert second[:2] == [digits(18.05484, 5), digits(4.05484, 5)]
     assert column(AX_SEGMENTS(*tables, "Elongation (mm)")) == [digits(0.0676405, 7), digits(0.0422520, 7)]
     moved = column(AX_SEGMENTS(*tables, "Displacement end (mm)"))

@@ -27,7 +27,9 @@ def supports(*marks: str, ends: tuple[Any, Any] = (0, 1)) -> CellRange:
     return CellRange(rows, "Ends", 1, 1)
 
 
-def check(answer: list[list[Any]], problems: list[list[Any]], *, code: CellError, cell: str, says: str, remedy: str) -> None:
+def check(
+    answer: list[list[Any]], problems: list[list[Any]], *, code: CellError, cell: str, says: str, remedy: str
+) -> None:
     assert answer[0] == [pytest.approx(-200e9 * 500e-6 * 12e-6 * 10 / 1e3)]  # restrained steel, closed form
     assert all(row == [code] for row in answer[1:])
     assert problems[0][0] == len(problems) - 1 >= 1
@@ -57,7 +59,12 @@ def check(answer: list[list[Any]], problems: list[list[Any]], *, code: CellError
         (["B", "1,234", 500, 200, 12, 0, None], "Bars!B3", "in two ways", "Decimal mark"),
         (["B", "12 kN", 500, 200, 12, 0, None], "Bars!B3", "unit of force, not of length", "write a unit of length"),
         (["B", "3/4", 500, 200, 12, 0, None], "Bars!B3", "fraction", "decimal"),
-        (["Total", 1000, 500, 200, 12, 0, None], "Bars!A3", "'Total' stands in the column of marks", "end the range above"),
+        (
+            ["Total", 1000, 500, 200, 12, 0, None],
+            "Bars!A3",
+            "'Total' stands in the column of marks",
+            "end the range above",
+        ),
         ([None, 1000, 500, 200, 12, 0, None], "Bars!A3", "the row has no mark", "Blank mark"),
         ([dt.datetime(2026, 3, 4), 1000, 500, 200, 12, 0, None], "Bars!A3", "into a date", "type the label again"),
         ([0.75, 1000, 500, 200, 12, 0, None], "Bars!A3", "become the number 0.75", "format the cell as text"),
@@ -65,14 +72,24 @@ def check(answer: list[list[Any]], problems: list[list[Any]], *, code: CellError
 )
 def test_a_bad_segment_row_fails_alone(row: list[Any], cell: str, says: str, remedy: str) -> None:
     tables = (schedule(row), supports("B"))
-    check(AX_SEGMENTS(*tables, None, "kN"), AX_SEGMENTS(*tables, None, "Problems"), code=VALUE, cell=cell, says=says, remedy=remedy)
+    check(
+        AX_SEGMENTS(*tables, None, "kN"),
+        AX_SEGMENTS(*tables, None, "Problems"),
+        code=VALUE,
+        cell=cell,
+        says=says,
+        remedy=remedy,
+    )
     status = [r[0] for r in AX_SEGMENTS(*tables, None, "Status")]
     assert status[0].startswith("ok")
     assert says in status[1]
 
 
 def test_every_row_of_a_failing_member_fails_and_says_where() -> None:
-    tables = (schedule(["B", 1000, 500, 200, 12, 5, None], ["B", "TBC", 500, 200, 12, 5, None]), supports("B", ends=(0, 2)))
+    tables = (
+        schedule(["B", 1000, 500, 200, 12, 5, None], ["B", "TBC", 500, 200, 12, 5, None]),
+        supports("B", ends=(0, 2)),
+    )
     assert [row[0] for row in AX_SEGMENTS(*tables, None, "kN")][1:] == [VALUE, VALUE]
     assert all("Bars!B4" in row[0] for row in AX_SEGMENTS(*tables, None, "Status")[1:])
     assert AX_MEMBERS(*tables, None, [["Mark", "Force max (kN)"]])[1] == ["B", VALUE]
@@ -85,7 +102,13 @@ def test_every_row_of_a_failing_member_fails_and_says_where() -> None:
         ([], "Bars!A3", "has no support", "one node held", NUM),
         ([["B", 7, None]], "Ends!B4", "no node '7'", "write 0 to 1", VALUE),
         ([["B", None, 5]], "Ends!B4", "stands nowhere", "Node", VALUE),
-        ([["B", 0, None], ["B", 0, None]], "Ends!C5", "a rigid support stands at this place already", "Stiffness", VALUE),
+        (
+            [["B", 0, None], ["B", 0, None]],
+            "Ends!C5",
+            "a rigid support stands at this place already",
+            "Stiffness",
+            VALUE,
+        ),
         ([["B", 0, 0]], "Ends!C4", "Stiffness is zero", "leave the cell blank", VALUE),
         ([["B", 0, -4]], "Ends!C4", "Stiffness is negative", "leave the cell blank", VALUE),
         ([["B", 0, "soft"]], "Ends!C4", "'soft' is not a number", "write a number", VALUE),
@@ -130,7 +153,9 @@ def test_bad_loads(load: list[Any], cell: str, says: str, remedy: str) -> None:
 def test_unlike_preloads_in_one_run() -> None:
     tables = (schedule(["B", 1000, 500, 200, 12, 0, 50], ["B", 1000, 500, 200, 12, 0, 60]), supports("B", ends=(0, 2)))
     answer, problems = AX_SEGMENTS(*tables, None, "kN"), AX_SEGMENTS(*tables, None, "Problems")
-    check(answer, problems, code=VALUE, cell="Bars!G4", says="preloads in one unbranched run differ", remedy="one preload")
+    check(
+        answer, problems, code=VALUE, cell="Bars!G4", says="preloads in one unbranched run differ", remedy="one preload"
+    )
 
 
 def test_a_preload_that_nothing_holds() -> None:
@@ -234,7 +259,9 @@ def test_settings_and_combinations_that_are_not_understood_stop_the_call() -> No
     assert AX_SEGMENTS(*tables, "kN", None, [["Strength factor", -1]]) == [[VALUE]]
 
 
-@pytest.mark.parametrize("wanted", ["Torque (kN)", "Force", "Force (mm)", [["Force max (kN)", 5]], [[CellError("#REF!")]]])
+@pytest.mark.parametrize(
+    "wanted", ["Torque (kN)", "Force", "Force (mm)", [["Force max (kN)", 5]], [[CellError("#REF!")]]]
+)
 def test_wanted_headings_that_are_not_understood(wanted: Any) -> None:
     answer = AX_SEGMENTS(schedule(), supports(), None, wanted)
     assert answer[0][-1] == NAME

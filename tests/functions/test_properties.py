@@ -10,7 +10,16 @@ from hypothesis import strategies as st
 
 from xlaxial.functions import AX_REACTIONS, AX_SEGMENTS
 
-HEADINGS = ["Length (mm)", "Diameter (mm)", "End diameter (mm)", "E (GPa)", "Alpha (1e-6/K)", "dT (K)", "Misfit (mm)", "q (kN/m)"]
+HEADINGS = [
+    "Length (mm)",
+    "Diameter (mm)",
+    "End diameter (mm)",
+    "E (GPa)",
+    "Alpha (1e-6/K)",
+    "dT (K)",
+    "Misfit (mm)",
+    "q (kN/m)",
+]
 WANTED = [["Force start (kN)", "Force end (kN)", "Displacement start (mm)", "Displacement end (mm)"]]
 CLOSE = 1e-8
 
@@ -20,7 +29,14 @@ def number(least: float, most: float) -> st.SearchStrategy[float]:
 
 
 segment = st.tuples(
-    number(50, 3000), number(8, 90), number(8, 90), number(10, 400), number(0, 30), number(-40, 40), number(-2, 2), number(-30, 30)
+    number(50, 3000),
+    number(8, 90),
+    number(8, 90),
+    number(10, 400),
+    number(0, 30),
+    number(-40, 40),
+    number(-2, 2),
+    number(-30, 30),
 ).map(list)
 chains = st.lists(segment, min_size=1, max_size=6)
 
@@ -37,7 +53,11 @@ def members(draw: st.DrawFn) -> tuple[list[list[Any]], list[list[Any]], list[lis
 
 def tables(member: Any) -> tuple[Any, Any, Any]:
     segments, supports, loads = member
-    return [HEADINGS, *segments], [["Node", "Stiffness (kN/mm)", "Settlement (mm)"], *supports], [["Node", "Force (kN)"], *loads]
+    return (
+        [HEADINGS, *segments],
+        [["Node", "Stiffness (kN/mm)", "Settlement (mm)"], *supports],
+        [["Node", "Force (kN)"], *loads],
+    )
 
 
 def scale(rows: list[list[float]], column: int = 0) -> float:
@@ -156,9 +176,27 @@ def test_units_change_nothing(member: Any) -> None:
     inch, kip, ksi = 25.4, 4.4482216152605, 6.894757293168361
     imperial = (
         [
-            ["Length (in)", "Diameter (in)", "End diameter (in)", "E (ksi)", "Alpha (1e-6/°F)", "dT (°F)", "Misfit (in)", "q (kip/ft)"],
+            [
+                "Length (in)",
+                "Diameter (in)",
+                "End diameter (in)",
+                "E (ksi)",
+                "Alpha (1e-6/°F)",
+                "dT (°F)",
+                "Misfit (in)",
+                "q (kip/ft)",
+            ],
             *(
-                [r[0] / inch, r[1] / inch, r[2] / inch, r[3] * 1e3 / ksi, r[4] / 1.8, r[5] * 1.8, r[6] / inch, r[7] / (kip / 0.3048)]
+                [
+                    r[0] / inch,
+                    r[1] / inch,
+                    r[2] / inch,
+                    r[3] * 1e3 / ksi,
+                    r[4] / 1.8,
+                    r[5] * 1.8,
+                    r[6] / inch,
+                    r[7] / (kip / 0.3048),
+                ]
                 for r in segments
             ),
         ],

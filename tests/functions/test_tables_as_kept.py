@@ -128,7 +128,12 @@ def test_the_answer_follows_its_headings_and_their_units() -> None:
     wanted = [["Displacement end", None, "Force max", "Remark"], ["in", None, "lbf", None]]
     first = AX_SEGMENTS(PLAIN, ENDS, None, wanted)[0]
     force, moved = AX_SEGMENTS(PLAIN, ENDS, None, WANTED)[0]
-    assert first == [pytest.approx(moved / 25.4), None, pytest.approx(force * 1e3 / 4.4482216152605), CellError("#NAME?")]
+    assert first == [
+        pytest.approx(moved / 25.4),
+        None,
+        pytest.approx(force * 1e3 / 4.4482216152605),
+        CellError("#NAME?"),
+    ]
 
 
 def test_standard_set_comes_with_its_headings_in_the_tables_units() -> None:
@@ -142,14 +147,18 @@ def test_standard_set_comes_with_its_headings_in_the_tables_units() -> None:
 def test_utilisation_pass_and_what_is_not_known() -> None:
     table = [[*PLAIN[0], "Yield (MPa)", "Net area (mm2)", "Buckling resistance (kN)"]]
     table += [[*PLAIN[1], 355, None, 100], [*PLAIN[2], 355, 300, None], [*PLAIN[3], None, None, None]]
-    rows = AX_SEGMENTS(table, ENDS, None, [["Force (kN)", "Utilisation", "Pass", "Status"]], None, [["Strength factor", 0.9]])
+    rows = AX_SEGMENTS(
+        table, ENDS, None, [["Force (kN)", "Utilisation", "Pass", "Status"]], None, [["Strength factor", 0.9]]
+    )
     force = rows[0][0]
     assert rows[0][1] == pytest.approx(max(-force / 100, -force * 1e3 / 600 / (355 * 0.9)))
     assert rows[1][1] == pytest.approx(-force * 1e3 / 300 / (355 * 0.9))
     assert rows[0][2] == 1
-    assert "buckling not checked" in rows[1][3] and "buckling not checked" not in rows[0][3]
+    assert "buckling not checked" in rows[1][3]
+    assert "buckling not checked" not in rows[0][3]
     assert "strength factor 0.9" in rows[0][3]
-    assert rows[2][1:3] == [CellError("#N/A")] * 2 and "no Yield" in rows[2][3]
+    assert rows[2][1:3] == [CellError("#N/A")] * 2
+    assert "no Yield" in rows[2][3]
     governing = AX_MEMBERS(table, ENDS, None, [["Mark", "Segment", "Pass"]], None, [["Strength factor", 0.9]])
     assert governing == [["T1", 2, 1], ["T2", CellError("#N/A"), CellError("#N/A")]]
     assert AX_MEMBERS(table, ENDS, None, "Segment")[0] == [1]  # with the whole yield stress buckling governs
@@ -194,7 +203,9 @@ def test_settlement_in_the_loads_table_moves_the_support_there() -> None:
     table = [PLAIN[0], PLAIN[3]]
     by_loads = AX_SEGMENTS(table, [row[:3] for row in ends], loads, "kN")
     assert by_loads == [[pytest.approx(AX_SEGMENTS(table, ends, None, "kN")[0][0])]]
-    lost = AX_SEGMENTS([PLAIN[0], PLAIN[1], PLAIN[2]], ENDS[:3], [["Mark", "Node", "Settlement (mm)"], ["T1", 1, 0.4]], "kN")
+    lost = AX_SEGMENTS(
+        [PLAIN[0], PLAIN[1], PLAIN[2]], ENDS[:3], [["Mark", "Node", "Settlement (mm)"], ["T1", 1, 0.4]], "kN"
+    )
     assert lost == [[CellError("#VALUE!")]] * 2
 
 
@@ -209,7 +220,9 @@ def test_one_row_calls_agree_with_the_whole_table() -> None:
 
 def test_profile_has_both_sides_of_each_jump_and_reaches_both_ends() -> None:
     loads = [["Mark", "x (m)", "Force (kN)"], ["T1", 0.5, 20]]
-    rows: list[list[Any]] = AX_PROFILE(PLAIN, ENDS, loads, "T1", [["x (m)", "Force (kN)", "Displacement (mm)"]], None, None, 3)
+    rows: list[list[Any]] = AX_PROFILE(
+        PLAIN, ENDS, loads, "T1", [["x (m)", "Force (kN)", "Displacement (mm)"]], None, None, 3
+    )
     assert len(rows) == 3 * 3
     assert [rows[2][0], rows[3][0], rows[-1][0]] == [pytest.approx(0.5), pytest.approx(0.5), pytest.approx(2.0)]
     assert rows[2][1] - rows[3][1] == pytest.approx(20.0)

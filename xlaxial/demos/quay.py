@@ -74,7 +74,16 @@ def _segments(ties: list[dict[str, Any]]) -> list[list[Any]]:
     rows = []
     for i, tie in enumerate(ties):
         stress_area = round(0.7854 * (tie["thread"] - 0.9382 * 6) ** 2)
-        upset: list[Any] = ["upset end, wall", 0.6, tie["thread"], None, None, stress_area, tie["first"], tie["preload"]]
+        upset: list[Any] = [
+            "upset end, wall",
+            0.6,
+            tie["thread"],
+            None,
+            None,
+            stress_area,
+            tie["first"],
+            tie["preload"],
+        ]
         coupler: list[Any] = ["coupler", 0.25, None, tie["bar"] + 46, 22, None, tie["steel"], None]
         if i == 10:  # a coupler from another maker's list, in its own units
             coupler = ["coupler", "10 in", None, "4.25 in", "0.875 in", None, tie["steel"], None]
@@ -92,7 +101,10 @@ def _segments(ties: list[dict[str, Any]]) -> list[list[Any]]:
 
 def _name(book: Any, name: str, sheet: str, area: str) -> None:
     start, end = area.split(":")
-    fixed = ":".join("$" + "".join(c for c in ref if c.isalpha()) + "$" + "".join(c for c in ref if c.isdigit()) for ref in (start, end))
+    fixed = ":".join(
+        "$" + "".join(c for c in ref if c.isalpha()) + "$" + "".join(c for c in ref if c.isdigit())
+        for ref in (start, end)
+    )
     book.defined_names[name] = DefinedName(name, attr_text=f"'{sheet}'!{fixed}")
 
 
@@ -100,32 +112,49 @@ def _schedule(book: Any, ties: list[dict[str, Any]]) -> int:
     """Write the schedule sheet; return the number of its rows."""
     sheet = book.create_sheet("Ties")
     rows = _segments(ties)
-    style.title(sheet, "Quay ties: schedule of segments", "Invented data. Rows of one mark stand in series from the sheet-pile wall to the anchor wall.")
+    style.title(
+        sheet,
+        "Quay ties: schedule of segments",
+        "Invented data. Rows of one mark stand in series from the sheet-pile wall to the anchor wall.",
+    )
     first, last = _TOP + 1, _TOP + len(rows)
     style.headings(sheet, _TOP, 1, _SEGMENT_HEADINGS)
     style.grid(sheet, first, 1, rows, _SEGMENT_FORMATS)
     style.headings(sheet, _TOP, 11, ["Mass (kg)"])
-    mass = (
-        f'=IF(ISNUMBER(D{{r}}),PI()/4*D{{r}}^2*C{{r}}*0.00785,IF(ISNUMBER(E{{r}}),PI()*F{{r}}*(E{{r}}-F{{r}})*C{{r}}*0.00785,"own units"))'
-    )
+    mass = '=IF(ISNUMBER(D{r}),PI()/4*D{r}^2*C{r}*0.00785,IF(ISNUMBER(E{r}),PI()*F{r}*(E{r}-F{r})*C{r}*0.00785,"own units"))'
     style.grid(sheet, first, 11, [[mass.format(r=r)] for r in range(first, last + 1)], ["0.0"])
     style.headings(sheet, _TOP, 13, _WANTED, result=True)
-    call = f"AX_SEGMENTS(Segments,Supports,Loads,{{wanted}},,Settings)"
+    call = "AX_SEGMENTS(Segments,Supports,Loads,{wanted},,Settings)"
     wanted = f"M{_TOP}:U{_TOP}"
     style.block(sheet, first, 13, len(rows), _WANTED_FORMATS, "=" + call.format(wanted=wanted))
     style.headings(sheet, _TOP, 23, ["Reserve"])
     style.grid(sheet, first, 23, [[f"=1-T{r}"] for r in range(first, last + 1)], ["0%"], result=True)
     style.mark_utilisation(sheet, f"T{first}:T{last}")
     problems = call.format(wanted='"Problems"')
-    style.line(sheet, 4, 1, "Rows in the block", f'=IF(ROWS(M{first}:M{last})=COUNTA(A{first}:A{last}),"as the table","mend the block")')
+    style.line(
+        sheet,
+        4,
+        1,
+        "Rows in the block",
+        f'=IF(ROWS(M{first}:M{last})=COUNTA(A{first}:A{last}),"as the table","mend the block")',
+    )
     style.line(sheet, 5, 1, "Problems", f"=INDEX({problems},1,1)", "0")
-    style.line(sheet, 6, 1, "First problem", f'=IF(B5=0,"none",INDEX({problems},2,1)&": "&INDEX({problems},2,2)&"; "&INDEX({problems},2,3))')
+    style.line(
+        sheet,
+        6,
+        1,
+        "First problem",
+        f'=IF(B5=0,"none",INDEX({problems},2,1)&": "&INDEX({problems},2,2)&"; "&INDEX({problems},2,3))',
+    )
     style.line(sheet, 4, 13, "Largest utilisation", f"=MAX(T{first}:T{last})", "0.000")
     style.line(sheet, 5, 13, "Segments that do not pass", f"=COUNTA(A{first}:A{last})-COUNTIF(U{first}:U{last},1)", "0")
     style.line(sheet, 6, 13, "Mass of ties (t)", f"=SUM(K{first}:K{last})/1000", "0.00")
     for row in (4, 5, 6):  # the value stands clear of its long label
         sheet.cell(row, 16).value, sheet.cell(row, 14).value = sheet.cell(row, 14).value, None
-        sheet.cell(row, 16).font, sheet.cell(row, 16).number_format = sheet.cell(row, 14).font.copy(), sheet.cell(row, 14).number_format
+        sheet.cell(row, 16).font, sheet.cell(row, 16).number_format = (
+            sheet.cell(row, 14).font.copy(),
+            sheet.cell(row, 14).number_format,
+        )
     style.widths(sheet, (16, 18, 9, 10, 10, 8, 10, 11, 10, 2, 9, 2, 10, 10, 10, 10.5, 10.5, 12.5, 12.5, 10.5, 7, 2, 9))
     sheet.freeze_panes = sheet.cell(first, 3)
     style.printing(sheet, f"A1:W{last}", CAUTION, rows=f"{_TOP}:{_TOP}")
@@ -135,7 +164,11 @@ def _schedule(book: Any, ties: list[dict[str, Any]]) -> int:
 
 def _supports(book: Any, ties: list[dict[str, Any]]) -> None:
     sheet = book.create_sheet("Supports")
-    style.title(sheet, "Supports and their reactions", "The wall spring is the sheet piling's own; the anchor wall's yield is its stiffness. Reactions act on the tie, towards the land positive.")
+    style.title(
+        sheet,
+        "Supports and their reactions",
+        "The wall spring is the sheet piling's own; the anchor wall's yield is its stiffness. Reactions act on the tie, towards the land positive.",
+    )
     rows = []
     for i, tie in enumerate(ties):
         nodes = 5 if tie["far_upset"] else 4
@@ -145,13 +178,23 @@ def _supports(book: Any, ties: list[dict[str, Any]]) -> None:
     style.headings(sheet, _TOP, 1, ("Mark", "Node", "Stiffness (kN/mm)", "Settlement (mm)", "Where"))
     style.grid(sheet, _TOP + 1, 1, rows, ("@", "0", "0.0", "0.0", "@"))
     style.headings(sheet, _TOP, 7, ("Reaction (kN)", "Reaction (kip)"), result=True)
-    style.block(sheet, _TOP + 1, 7, len(rows), ("0.0", "0.0"), f"=AX_REACTIONS(Segments,Supports,Loads,G{_TOP}:H{_TOP},,Settings)")
+    style.block(
+        sheet,
+        _TOP + 1,
+        7,
+        len(rows),
+        ("0.0", "0.0"),
+        f"=AX_REACTIONS(Segments,Supports,Loads,G{_TOP}:H{_TOP},,Settings)",
+    )
     style.line(sheet, 4, 1, "Sum of reactions (kN)", f"=SUM(G{_TOP + 1}:G{last})", "0.0")
     style.line(sheet, 5, 1, "Sum of loads (kN)", "=SUM(Loads!F9:F200)", "0.0")
     style.line(sheet, 6, 1, "Out of balance (kN)", "=ROUND(C4+C5,6)", "0.000000")
     for row in (4, 5, 6):
         sheet.cell(row, 3).value, sheet.cell(row, 2).value = sheet.cell(row, 2).value, None
-        sheet.cell(row, 3).font, sheet.cell(row, 3).number_format = sheet.cell(row, 2).font.copy(), sheet.cell(row, 2).number_format
+        sheet.cell(row, 3).font, sheet.cell(row, 3).number_format = (
+            sheet.cell(row, 2).font.copy(),
+            sheet.cell(row, 2).number_format,
+        )
     style.widths(sheet, (9, 14, 12, 12, 18, 2, 12, 12))
     sheet.freeze_panes = sheet.cell(_TOP + 1, 1)
     style.printing(sheet, f"A1:H{last}", CAUTION, rows=f"{_TOP}:{_TOP}", portrait=True)
@@ -160,7 +203,11 @@ def _supports(book: Any, ties: list[dict[str, Any]]) -> None:
 
 def _loads(book: Any, ties: list[dict[str, Any]]) -> None:
     sheet = book.create_sheet("Loads")
-    style.title(sheet, "Loads", "D earth and water behind the wall, L surcharge on the apron, T cold splash zone; forces at x are drag of a collar in the fill. Towards the water is negative.")
+    style.title(
+        sheet,
+        "Loads",
+        "D earth and water behind the wall, L surcharge on the apron, T cold splash zone; forces at x are drag of a collar in the fill. Towards the water is negative.",
+    )
     rows: list[list[Any]] = []
     for tie in ties:
         rows.append([tie["mark"], "D", 0, None, None, -round(tie["dead"]), None])
@@ -181,12 +228,30 @@ def _loads(book: Any, ties: list[dict[str, Any]]) -> None:
 
 def _summary(book: Any, ties: list[dict[str, Any]]) -> None:
     sheet = book.create_sheet("Summary")
-    style.title(sheet, "Governing values, tie by tie", "All load cases summed. Segment counts from 1 within its mark, from the wall.")
-    wanted = ("Mark", "Force max (kN)", "Stress max (MPa)", "Displacement min (mm)", "Displacement max (mm)", "Segment", "Redundants", "Residual", "Utilisation", "Pass", "Status")
+    style.title(
+        sheet,
+        "Governing values, tie by tie",
+        "All load cases summed. Segment counts from 1 within its mark, from the wall.",
+    )
+    wanted = (
+        "Mark",
+        "Force max (kN)",
+        "Stress max (MPa)",
+        "Displacement min (mm)",
+        "Displacement max (mm)",
+        "Segment",
+        "Redundants",
+        "Residual",
+        "Utilisation",
+        "Pass",
+        "Status",
+    )
     formats = ("@", "0.0", "0.0", "0.00", "0.00", "0", "0", "0.0E+00", "0.000", "0", "@")
     last = _TOP + len(ties)
     style.headings(sheet, _TOP, 1, wanted, result=True)
-    style.block(sheet, _TOP + 1, 1, len(ties), formats, f"=AX_MEMBERS(Segments,Supports,Loads,A{_TOP}:K{_TOP},,Settings)")
+    style.block(
+        sheet, _TOP + 1, 1, len(ties), formats, f"=AX_MEMBERS(Segments,Supports,Loads,A{_TOP}:K{_TOP},,Settings)"
+    )
     style.mark_utilisation(sheet, f"I{_TOP + 1}:I{last}")
     style.line(sheet, 4, 1, "Ties", f"=ROWS(A{_TOP + 1}:A{last})", "0")
     style.line(sheet, 5, 1, "Do not pass", f"=B4-COUNTIF(J{_TOP + 1}:J{last},1)", "0")
@@ -206,7 +271,9 @@ def _profile(book: Any) -> None:
     style.headings(sheet, _TOP, 1, ("x (m)", "Segment", "Force (kN)", "Stress (MPa)", "Displacement (mm)"), result=True)
     n_rows = 66
     formats = ("0.000", "0", "0.0", "0.0", "0.00")
-    style.block(sheet, _TOP + 1, 1, n_rows, formats, f"=AX_PROFILE(Segments,Supports,Loads,B4,A{_TOP}:E{_TOP},,Settings,11)")
+    style.block(
+        sheet, _TOP + 1, 1, n_rows, formats, f"=AX_PROFILE(Segments,Supports,Loads,B4,A{_TOP}:E{_TOP},,Settings,11)"
+    )
     style.line(sheet, 5, 1, "Stations", f"=COUNT(A{_TOP + 1}:A{_TOP + n_rows})", "0")
     style.text(sheet, 6, "Rows beyond the last station show #N/A; charts pass them over.", last="E")
     for k, (column, name, unit) in enumerate(((3, "Axial force", "kN"), (5, "Movement towards the land", "mm"))):
@@ -236,7 +303,11 @@ def _profile(book: Any) -> None:
 def _light_ties(book: Any) -> None:
     """Write a spreadsheet table in customary units, each answer a call of its own row."""
     sheet = book.create_sheet("Light ties")
-    style.title(sheet, "Light ties of the boat landing (customary units)", "A spreadsheet table: each answer is a call of its own row, and grows with the table. Both ends on the supports below.")
+    style.title(
+        sheet,
+        "Light ties of the boat landing (customary units)",
+        "A spreadsheet table: each answer is a call of its own row, and grows with the table. Both ends on the supports below.",
+    )
     inputs = ("Mark", "Length (in)", "Diameter (in)", "Material", "dT (°F)", "Preload (kip)")
     results = ("Force max (kip)", "Stress max (ksi)", "Elongation (in)", "Utilisation", "Pass")
     materials = ("A36", "A572-50", "F1554-55", "1.4462")
@@ -261,7 +332,7 @@ def _light_ties(book: Any) -> None:
             continue
         head = f"LightTies[[#Headers],[{heading}]]"
         names = "LightTies[[#Headers],[Mark]:[Preload (kip)]]"
-        call = "AX_SEGMENTS(LightTies[[#This Row],[Mark]:[Preload (kip)]],LightSupports,,{0},,Settings,{1})".format(head, names)
+        call = f"AX_SEGMENTS(LightTies[[#This Row],[Mark]:[Preload (kip)]],LightSupports,,{head},,Settings,{names})"
         column.calculatedColumnFormula = TableFormula(attr_text=call)
         cells = [[f"={call}"] for _ in rows]
         style.grid(sheet, top + 1, j + 1, cells, [formats[j - len(inputs)]], result=True)
@@ -279,7 +350,11 @@ def _light_ties(book: Any) -> None:
 def _notes(book: Any, n_rows: int) -> None:
     sheet = book.active
     sheet.title = "Notes"
-    style.title(sheet, "Quay ties: a demo schedule for xlaxial", "Invented data: places, marks and numbers belong to no real work.")
+    style.title(
+        sheet,
+        "Quay ties: a demo schedule for xlaxial",
+        "Invented data: places, marks and numbers belong to no real work.",
+    )
     style.text(sheet, 4, "Caution", bold=True)
     style.text(sheet, 5, CAUTION, height=30)
     style.text(sheet, 7, "What the schedule holds", bold=True)
@@ -287,8 +362,8 @@ def _notes(book: Any, n_rows: int) -> None:
         f"25 tie rods in {n_rows} segments (sheet Ties), held by the sheet-pile wall's spring and a yielding anchor wall (Supports); eight lighter ties in customary units (Light ties).",
         "Each tie is statically indeterminate: wall and tie share the load by their stiffness, temperature and the settlement of some anchors add to it, and preload is the force at lock-off, before any load.",
         "Tension, and movement and reactions towards the land, are positive. Node 0 is at the wall. Load cases D, L and T are summed.",
-        "Threads are checked on their stress area (Net area), bars and couplers on their area. Yield is the material's by diameter or wall; the source of each: AX_MATERIAL(name, \"Source\").",
-        "Compression is not expected; a segment that is compressed says \"buckling not checked\" in Status (sheet Summary).",
+        'Threads are checked on their stress area (Net area), bars and couplers on their area. Yield is the material\'s by diameter or wall; the source of each: AX_MATERIAL(name, "Source").',
+        'Compression is not expected; a segment that is compressed says "buckling not checked" in Status (sheet Summary).',
         "The coupler of Q11 is typed in inches on purpose: a cell's own unit wins over its heading's.",
         "The result blocks are array formulas of fixed size: rows cannot be inserted through them or sorted past them. Make the block anew after adding rows, or use the table form of the sheet Light ties.",
     )

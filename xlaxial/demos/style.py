@@ -56,7 +56,9 @@ def grid(
             cell.border = Border(top=_LINE, bottom=_LINE, left=_LINE, right=_LINE)
             cell.number_format = formats[j]
             left = formats[j] == "@"
-            cell.alignment = Alignment(horizontal="left" if left else "right", vertical="center", indent=1 if left else 0)
+            cell.alignment = Alignment(
+                horizontal="left" if left else "right", vertical="center", indent=1 if left else 0
+            )
             if result:
                 cell.fill = _RESULT
 
@@ -93,7 +95,9 @@ def mark_utilisation(sheet: Any, area: str) -> None:
     """Shade a utilisation above 1, an error value, and one above 0.95."""
     first = area.split(":")[0]
     sheet.conditional_formatting.add(area, FormulaRule(formula=[f"ISERROR({first})"], fill=_WARN, font=Font(bold=True)))
-    sheet.conditional_formatting.add(area, CellIsRule(operator="greaterThan", formula=["1"], fill=_WARN, font=Font(bold=True)))
+    sheet.conditional_formatting.add(
+        area, CellIsRule(operator="greaterThan", formula=["1"], fill=_WARN, font=Font(bold=True))
+    )
     sheet.conditional_formatting.add(area, CellIsRule(operator="greaterThan", formula=["0.95"], fill=_NEAR))
 
 

@@ -12,9 +12,15 @@ _SOURCE = (
     "checked against closed forms and general-purpose libraries in the tests."
 )
 
-SEGMENTS = Argument("segments", "Segments table with its heading row: Length, Area or Diameter, E or Material, and more.", "table")
-SUPPORTS = Argument("supports", "Supports table with its heading row: Node or x, Stiffness (blank is rigid), Settlement.", "table")
-LOADS = Argument("loads", "Loads table with its heading row: Node, x or Segment, and Force, q, dT and more.", "table", optional=True)
+SEGMENTS = Argument(
+    "segments", "Segments table with its heading row: Length, Area or Diameter, E or Material, and more.", "table"
+)
+SUPPORTS = Argument(
+    "supports", "Supports table with its heading row: Node or x, Stiffness (blank is rigid), Settlement.", "table"
+)
+LOADS = Argument(
+    "loads", "Loads table with its heading row: Node, x or Segment, and Force, q, dT and more.", "table", optional=True
+)
 WANTED = Argument(
     "wanted",
     'Headings of the answer with their units, one heading as text, a bare unit such as "kN", or "Problems".',
@@ -32,7 +38,9 @@ HEADINGS = Argument(
     optional=True,
 )
 MARK = Argument("mark", "Mark of the member; may be blank where the table holds one member.", "value")
-POINTS = Argument("points", "Stations on each piece between nodes and loads, 2 or more; 11 where left out.", "value", optional=True)
+POINTS = Argument(
+    "points", "Stations on each piece between nodes and loads, 2 or more; 11 where left out.", "value", optional=True
+)
 
 _TABLES = ("segments", "supports", "loads")
 _CALL = (SEGMENTS, SUPPORTS, LOADS, WANTED, COMBINATIONS, SETTINGS, HEADINGS)
@@ -41,7 +49,9 @@ STATUS = ResultWord("Status", "text", "ok and what the result rests on, or what 
 COMBINATION = ResultWord("Combination", "text", "the combination that governs Utilisation")
 
 REACTION_WORDS = (
-    ResultWord("Reaction", "force", "force of the support on the member, towards +x positive", ("R", "Support reaction")),
+    ResultWord(
+        "Reaction", "force", "force of the support on the member, towards +x positive", ("R", "Support reaction")
+    ),
     ResultWord("Reaction max", "force", "algebraically largest over the combinations", ("Max reaction",)),
     ResultWord("Reaction min", "force", "algebraically least over the combinations", ("Min reaction",)),
     ResultWord("Combination max", "text", "the combination of Reaction max"),
@@ -51,24 +61,41 @@ REACTION_WORDS = (
 )
 
 SEGMENT_WORDS = (
-    ResultWord("Force", "force", "axial force of largest magnitude in the segment, tension positive", ("N", "Axial force")),
+    ResultWord(
+        "Force", "force", "axial force of largest magnitude in the segment, tension positive", ("N", "Axial force")
+    ),
     ResultWord("Force start", "force", "axial force at the segment's start", ("N start",)),
     ResultWord("Force end", "force", "axial force at the segment's end", ("N end",)),
     ResultWord("Force max", "force", "algebraically largest axial force in the segment", ("N max", "Max force")),
-    ResultWord("Force min", "force", "algebraically least axial force (the largest compression)", ("N min", "Min force")),
+    ResultWord(
+        "Force min", "force", "algebraically least axial force (the largest compression)", ("N min", "Min force")
+    ),
     ResultWord("Stress", "stress", "axial stress of largest magnitude, on Area", ("σ", "Axial stress")),
     ResultWord("Stress start", "stress", "axial stress at the segment's start", ("σ start",)),
     ResultWord("Stress end", "stress", "axial stress at the segment's end", ("σ end",)),
-    ResultWord("Stress max", "stress", "algebraically largest axial stress, inside the segment too", ("σ max", "Max stress")),
-    ResultWord("Stress min", "stress", "algebraically least axial stress, inside the segment too", ("σ min", "Min stress")),
+    ResultWord(
+        "Stress max", "stress", "algebraically largest axial stress, inside the segment too", ("σ max", "Max stress")
+    ),
+    ResultWord(
+        "Stress min", "stress", "algebraically least axial stress, inside the segment too", ("σ min", "Min stress")
+    ),
     ResultWord("Strain", "strain", "Stress over E (imposed strain and temperature not in it)", ("ε",)),
-    ResultWord("Elongation", "length", "change of the distance between its ends, lengthening positive (take-up by preload in it)", ("Extension", "ΔL", "Change of length")),
+    ResultWord(
+        "Elongation",
+        "length",
+        "change of the distance between its ends, lengthening positive (take-up by preload in it)",
+        ("Extension", "ΔL", "Change of length"),
+    ),
     ResultWord("Elongation max", "length", "algebraically largest over the combinations"),
     ResultWord("Elongation min", "length", "algebraically least over the combinations"),
     ResultWord("Displacement start", "length", "movement of the segment's start, towards +x positive", ("u start",)),
     ResultWord("Displacement end", "length", "movement of the segment's end, towards +x positive", ("u end",)),
-    ResultWord("Displacement max", "length", "algebraically largest movement in the segment", ("u max", "Max displacement")),
-    ResultWord("Displacement min", "length", "algebraically least movement in the segment", ("u min", "Min displacement")),
+    ResultWord(
+        "Displacement max", "length", "algebraically largest movement in the segment", ("u max", "Max displacement")
+    ),
+    ResultWord(
+        "Displacement min", "length", "algebraically least movement in the segment", ("u min", "Min displacement")
+    ),
     ResultWord(
         "Utilisation",
         "ratio",
@@ -87,7 +114,9 @@ MEMBER_WORDS = (
     ResultWord("Utilisation", "ratio", "largest utilisation of the member's segments", ("Utilization", "Usage", "UR")),
     ResultWord("Mark", "text", "the member's mark", ("Member",)),
     ResultWord("Force max", "force", "algebraically largest axial force", ("N max", "Max force")),
-    ResultWord("Force min", "force", "algebraically least axial force (the largest compression)", ("N min", "Min force")),
+    ResultWord(
+        "Force min", "force", "algebraically least axial force (the largest compression)", ("N min", "Min force")
+    ),
     ResultWord("Stress max", "stress", "algebraically largest axial stress", ("σ max", "Max stress")),
     ResultWord("Stress min", "stress", "algebraically least axial stress", ("σ min", "Min stress")),
     ResultWord("Displacement max", "length", "algebraically largest movement, towards +x positive", ("u max",)),
@@ -125,7 +154,9 @@ _SEGMENTS_FUNCTION = Function(
 
 def _one_quantity(name: str, what: str, code: str, example: str) -> Function:
     first = {word.name: word for word in SEGMENT_WORDS}
-    main = {"forces": "Force", "stresses": "Stress", "elongations": "Elongation", "displacements": "Displacement end"}[code]
+    main = {"forces": "Force", "stresses": "Stress", "elongations": "Elongation", "displacements": "Displacement end"}[
+        code
+    ]
     words = (first[main], *(word for word in SEGMENT_WORDS if word.name != main))
     return replace(
         _SEGMENTS_FUNCTION,

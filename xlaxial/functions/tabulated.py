@@ -73,7 +73,9 @@ def material(name: Any, what: Any, unit_text: Any = None) -> Any:
         if dimension == "ratio":
             return value
         example = DIMENSIONS[dimension].examples[0]
-        raise AxialError(Problem(f"{asked} needs a unit", f'write it as the third argument, such as "{example}"', code="#NAME?"))
+        raise AxialError(
+            Problem(f"{asked} needs a unit", f'write it as the third argument, such as "{example}"', code="#NAME?")
+        )
     try:
         return value / unit(unit_text, dimension).factor
     except UnitError as wrong:
@@ -103,12 +105,15 @@ def _value(found: Material, attribute: str, thickness: float | None) -> float:
         return value
     if attribute == "shear":
         return found.modulus / (2.0 * (1.0 + found.poisson))
-    value = getattr(found, attribute)
-    return value
+    other: float = getattr(found, attribute)
+    return other
 
 
 def about() -> list[list[Any]]:
     """AX_ABOUT: version, edition of the data and caution, a line each below 255 characters."""
-    lines = [f"xlaxial {__version__}", f"Tabulated data of {EDITION}; each value with its source: AX_MATERIAL(name, \"Source\")"]
+    lines = [
+        f"xlaxial {__version__}",
+        f'Tabulated data of {EDITION}; each value with its source: AX_MATERIAL(name, "Source")',
+    ]
     half = CAUTION.index(";") + 1
     return [[line] for line in (*lines, CAUTION[:half], CAUTION[half:].strip())]

@@ -13,7 +13,9 @@ FUNCTIONS: tuple[Function, ...] = (
         (
             Argument("name", 'Material, such as "S355", "A992", "1.4401", "C30/37".', "value"),
             Argument("what", 'The property; strength that depends on thickness needs it: "Yield, 40 mm".', "value"),
-            Argument("unit", 'Unit of the answer, such as "GPa"; due for all that has a dimension.', "value", optional=True),
+            Argument(
+                "unit", 'Unit of the answer, such as "GPa"; due for all that has a dimension.', "value", optional=True
+            ),
         ),
         "One value; an error value where the source has none.",
         _CODE + "material",

@@ -12,8 +12,8 @@ import numpy as np
 from xlaxial.arrays import Floats
 from xlaxial.cells import CellError
 from xlaxial.problems import Problem
-from xlaxial.tables.words import ResultWord
 from xlaxial.tables.wanted import Column, Wanted
+from xlaxial.tables.words import ResultWord
 
 NOT_APPLICABLE = CellError("#N/A")
 

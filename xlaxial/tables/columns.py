@@ -9,8 +9,8 @@ from typing import Any
 
 import numpy as np
 
-from xlaxial.cells import CellError
 from xlaxial.arrays import Flags, Floats
+from xlaxial.cells import CellError
 from xlaxial.problems import AxialError, Problem, UnitError
 from xlaxial.tables.layout import Heading
 from xlaxial.tables.numbers import parse_number
@@ -132,7 +132,12 @@ def read_counts(cells: list[Any], heading: Heading, report: Report) -> Numbers:
     numbers = read_numbers(cells, plain, ".", report)
     wrong = numbers.values != np.floor(numbers.values)
     for i in np.flatnonzero(wrong & ~np.isnan(numbers.values)).tolist():
-        report(i, Problem(f"{heading.term.name} is {cells[i]}, not a whole number", "write 1, 2, 3 ...", heading=heading.text))
+        report(
+            i,
+            Problem(
+                f"{heading.term.name} is {cells[i]}, not a whole number", "write 1, 2, 3 ...", heading=heading.text
+            ),
+        )
         numbers.values[i] = np.nan
     return numbers
 

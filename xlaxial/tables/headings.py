@@ -85,7 +85,9 @@ SEGMENTS = TableKind(
     "one row a segment (a bar of one material); rows of one mark are a member, in series unless From and To are given",
     (
         _MARK,
-        Term("Order", "count", "place of the segment along its member; without it the rows' order", ("Sequence", "Seq")),
+        Term(
+            "Order", "count", "place of the segment along its member; without it the rows' order", ("Sequence", "Seq")
+        ),
         Term("From", "text", "node label at the segment's start", ("From node", "Start node", "Node from", "Node i")),
         Term("To", "text", "node label at the segment's end", ("To node", "End node", "Node to", "Node j")),
         Term("Length", "length", "length of the segment", ("L", "Len"), positive=True),
@@ -96,7 +98,13 @@ SEGMENTS = TableKind(
             ("A", "Cross-sectional area", "Section area", "Gross area", "Start area", "A1"),
             positive=True,
         ),
-        Term("End area", "area", "area at the end of a segment whose area varies linearly", ("Area end", "A2"), positive=True),
+        Term(
+            "End area",
+            "area",
+            "area at the end of a segment whose area varies linearly",
+            ("Area end", "A2"),
+            positive=True,
+        ),
         Term(
             "Diameter",
             "length",
@@ -148,7 +156,9 @@ SEGMENTS = TableKind(
             ("fy", "Yield stress", "Yield strength", "Rp0.2", "Re", "ReH"),
             positive=True,
         ),
-        Term("Hardening", "ratio", "slope after yield as Et/E, or a modulus with its unit", ("Et/E", "Tangent modulus")),
+        Term(
+            "Hardening", "ratio", "slope after yield as Et/E, or a modulus with its unit", ("Et/E", "Tangent modulus")
+        ),
         Term(
             "Net area",
             "area",
@@ -175,7 +185,13 @@ SUPPORTS = TableKind(
         _MARK,
         _NODE,
         _X,
-        Term("Stiffness", "stiffness", "spring stiffness; blank is rigid", ("k", "Spring", "Spring stiffness"), positive=True),
+        Term(
+            "Stiffness",
+            "stiffness",
+            "spring stiffness; blank is rigid",
+            ("k", "Spring", "Spring stiffness"),
+            positive=True,
+        ),
         _SETTLEMENT,
         _GAP,
         Term("Side", "text", "pushes right, pushes left or both"),

@@ -84,7 +84,9 @@ def _mapped(kind: TableKind, settings: Settings) -> dict[str, Term]:
 
 
 @lru_cache(maxsize=256)
-def _remembered(kind: str, mapped: tuple[tuple[str, str], ...], place: Any, rows: tuple[tuple[Any, ...], ...]) -> Layout:
+def _remembered(
+    kind: str, mapped: tuple[tuple[str, str], ...], place: Any, rows: tuple[tuple[Any, ...], ...]
+) -> Layout:
     block = CellRange(rows, *place) if place else list(rows)
     return find_layout(block, TABLES[kind], replace(DEFAULTS, headings=mapped))
 
@@ -144,7 +146,9 @@ def find_layout(block: Any, kind: TableKind, settings: Settings) -> Layout:
         if term.name in headings:
             other = cell_address(block, best, headings[term.name].column)
             what = f"the headings {headings[term.name].text!r} ({other}) and {cell!r} both mean {term.name}"
-            problems.append(_wrong(block, best, j, kind, what, f"keep one, or name it in the settings as Heading: {term.name}"))
+            problems.append(
+                _wrong(block, best, j, kind, what, f"keep one, or name it in the settings as Heading: {term.name}")
+            )
             continue
         below = block[units_row][j] if units_row >= 0 and j < len(block[units_row]) else None
         if isinstance(below, str) and below.strip():
@@ -198,7 +202,9 @@ def _wrong(block: Any, row: int, column: int, kind: TableKind, what: str, remedy
 def _no_headings(block: Any, kind: TableKind) -> Problem:
     wanted = ", ".join(term.name for term in kind.terms if term.name not in ("Stage", "Order"))[:150]
     if not len(block) or all(cell is None or cell == "" for row in block[:_SEARCHED_ROWS] for cell in row):
-        return Problem(f"the {kind.name} table is empty", "point the argument at a range with a heading row", table=kind.name)
+        return Problem(
+            f"the {kind.name} table is empty", "point the argument at a range with a heading row", table=kind.name
+        )
     return Problem(
         f"no heading row of a {kind.name} table is found in {cell_address(block, 0, 0)}",
         f"include the row with the headings in the range; understood are {wanted} ...",

@@ -35,7 +35,11 @@ def parse_number(text: str, decimal_mark: str = ".") -> tuple[float, str | None]
     plain = text.strip().replace("−", "-")
     if _FRACTION.match(plain):
         raise AxialError(Problem(f"{shown!r} is written as a fraction", "write it as a decimal, such as 0.75"))
-    found = _LEADING.match(plain) if plain.isascii() or not any(ch.isdigit() and ch not in "0123456789" for ch in plain[:1]) else None
+    found = (
+        _LEADING.match(plain)
+        if plain.isascii() or not any(ch.isdigit() and ch not in "0123456789" for ch in plain[:1])
+        else None
+    )
     if found is None:
         raise AxialError(Problem(f"{shown!r} is not a number", "write a number"))
     sign, digits, exponent = found.groups()
@@ -64,7 +68,9 @@ def _digits(digits: str, mark: str, shown: str) -> str:
         if not grouped and whole.count(group) > 1:
             raise AxialError(Problem(f"{shown!r} is not a number", "write it without marks between the digits"))
         if not grouped or (whole.count(group) == 1 and mark not in digits):
-            what = f"{shown!r} can be read in two ways" if grouped else f"{shown!r} has a decimal mark other than {mark!r}"
+            what = (
+                f"{shown!r} can be read in two ways" if grouped else f"{shown!r} has a decimal mark other than {mark!r}"
+            )
             remedy = f"type it as a number, or set Decimal mark | {group} in the settings"
             raise AxialError(Problem(what, remedy))
         whole = whole.replace(group, "")

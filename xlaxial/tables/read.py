@@ -18,7 +18,9 @@ from xlaxial.tables.layout import Layout, find_layout, headings_alone
 from xlaxial.tables.settings import Settings
 from xlaxial.units import normal
 
-TOTALS = frozenset(normal(word) for word in ("Total", "Totals", "Sum", "Σ", "∑", "Subtotal", "Sub-total", "Grand total"))
+TOTALS = frozenset(
+    normal(word) for word in ("Total", "Totals", "Sum", "Σ", "∑", "Subtotal", "Sub-total", "Grand total")
+)
 
 
 @dataclass
@@ -32,7 +34,9 @@ class Table:
     numbers: dict[str, Numbers] = field(default_factory=dict)  # SI, by term
     labels: dict[str, list[Any]] = field(default_factory=dict)  # text columns other than Mark, by term
     marks: list[Any] = field(default_factory=list)  # (n_rows,) label of the member or None
-    filled: Flags = field(default_factory=lambda: np.zeros(0, dtype=bool))  # any input beside the mark stands in the row
+    filled: Flags = field(
+        default_factory=lambda: np.zeros(0, dtype=bool)
+    )  # any input beside the mark stands in the row
     wrong: dict[int, Problem] = field(default_factory=dict)  # first problem of a row
     problems: list[Problem] = field(default_factory=list)  # all of them, in the order found
 
@@ -128,7 +132,11 @@ def read_table(block: Any, kind: str, settings: Settings, headings: Any = None) 
     table.problems.extend(layout.problems)
     if table.unusable:
         return table
-    rows = block[first : first + n] if not isinstance(block, CellRange) else list.__getitem__(block, slice(first, first + n))
+    rows = (
+        block[first : first + n]
+        if not isinstance(block, CellRange)
+        else list.__getitem__(block, slice(first, first + n))
+    )
     width = max(heading.column for heading in layout.headings.values()) + 1
     if n and min(map(len, rows)) < width:
         rows = [[*row, *([None] * (width - len(row)))] for row in rows]

@@ -8,9 +8,9 @@ from functools import lru_cache
 from typing import Any
 
 from xlaxial.cells import CellError, cell_address
-from xlaxial.tables.words import ResultWord
 from xlaxial.problems import AxialError, Problem, UnitError
 from xlaxial.tables.settings import Settings
+from xlaxial.tables.words import ResultWord
 from xlaxial.units import Unit, heading_forms, is_unit, normal, strip_brackets, unit
 
 PLAIN = frozenset({"text", "count", "flag", "ratio"})
@@ -40,9 +40,7 @@ class Wanted:
         return [column.problem for column in self.columns if column.problem is not None]
 
 
-def read_wanted(
-    wanted: Any, words: Sequence[ResultWord], standard: Sequence[str], settings: Settings
-) -> Wanted:
+def read_wanted(wanted: Any, words: Sequence[ResultWord], standard: Sequence[str], settings: Settings) -> Wanted:
     """Read the wanted headings of a call.
 
     Parameters
@@ -64,15 +62,14 @@ def read_wanted(
     """
     rows = [[wanted]] if isinstance(wanted, (str, CellError)) else wanted
     if rows is None or all(cell is None or cell == "" for row in rows for cell in row):
-        columns = tuple(_column(heading, None, tuple(words), ()) for heading in standard)
-        return Wanted(columns, with_headings=True)
+        return Wanted(tuple(_column(heading, None, tuple(words), ()) for heading in standard), with_headings=True)
     single = len(rows) == 1 and len(rows[0]) == 1
     if single and isinstance(rows[0][0], str) and normal(rows[0][0]) == "problems":
         return Wanted((), problems_only=True)
     if len(rows) > 2:
         what = f"the wanted headings stand in {len(rows)} rows"
         raise AxialError(Problem(what, "give one row of headings, or two with their units below", code="#NAME?"))
-    columns = []
+    columns: list[Column] = []
     for j, cell in enumerate(rows[0]):
         below = rows[1][j] if len(rows) == 2 else None
         if isinstance(cell, CellError) or (cell is not None and not isinstance(cell, str)):
@@ -83,7 +80,9 @@ def read_wanted(
             column = _column((cell or "").strip(), below, tuple(words), settings.headings)
         if column.problem is not None:
             place = cell_address(rows, 0, j) if not isinstance(wanted, str) else ""
-            column = replace(column, problem=replace(column.problem, cell=place, table="wanted", heading=column.heading))
+            column = replace(
+                column, problem=replace(column.problem, cell=place, table="wanted", heading=column.heading)
+            )
         columns.append(column)
     return Wanted(tuple(columns))
 
@@ -98,7 +97,13 @@ def _column(
     own = {normal(theirs): names.get(normal(ours)) for ours, theirs in mapped}
     for term_text, unit_text in heading_forms(heading):
         word = own.get(normal(term_text)) or names.get(normal(term_text))
-        if word is not None and unit_text is None and below is None and word.dimension not in PLAIN and is_unit(heading):
+        if (
+            word is not None
+            and unit_text is None
+            and below is None
+            and word.dimension not in PLAIN
+            and is_unit(heading)
+        ):
             break  # "N" is a symbol without its unit, or the bare unit: only the latter can be answered
         if word is not None:
             return _with_unit(heading, word, unit_text, below)

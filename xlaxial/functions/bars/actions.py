@@ -56,9 +56,7 @@ def read_actions(inputs: Inputs) -> RowActions:
     return RowActions(force_rows, force, columns["q"], imposed, columns["Preload"], preloaded, settlement)
 
 
-def _add_loads(
-    inputs: Inputs, columns: dict[str, Floats], preloaded: Flags, settlement: Floats
-) -> tuple[Ints, Floats]:
+def _add_loads(inputs: Inputs, columns: dict[str, Floats], preloaded: Flags, settlement: Floats) -> tuple[Ints, Floats]:
     """Add the rows of the loads table to the segments' columns and to settlements; return the forces."""
     loads, members = inputs.loads, inputs.members
     table, rows, own, places = loads.table, loads.rows, loads.member, loads.places
@@ -88,7 +86,7 @@ def _add_loads(
     for name in _ON_SEGMENT:
         if name in given:
             at = given[name] & (row_of >= 0)
-            np.add.at(columns[name], (row_of[at], 0), table.values(name)[rows[at]])
+            np.add.at(columns[name][:, 0], row_of[at], table.values(name)[rows[at]])
             if name == "Preload":
                 preloaded[row_of[at]] = True
     if "Settlement" in given:
@@ -106,7 +104,12 @@ def _segment_rows(inputs: Inputs, needed: Flags, fail) -> Ints:  # type: ignore[
     if not needed.any():
         return out
     number = loads.table.values("Segment", np.nan)[loads.rows]
-    fail(needed & np.isnan(number), "Segment", "an action on a segment needs Segment", "write the segment's number, from 1")
+    fail(
+        needed & np.isnan(number),
+        "Segment",
+        "an action on a segment needs Segment",
+        "write the segment's number, from 1",
+    )
     known = ~np.isnan(number)
     count = nodes.count[loads.member]
     outside = known & ((number < 1) | (number > count))

@@ -134,4 +134,6 @@ def _area_at(part: Floats, start: Floats, end: Floats, round_taper: Flags) -> Fl
     linear = start * (1.0 - part) + end * part
     round_ = (np.sqrt(start) * (1.0 - part) + np.sqrt(end) * part) ** 2
     uniform = start == end
-    return np.where(uniform, start, np.where(part == 0.0, start, np.where(part == 1.0, end, np.where(round_taper, round_, linear))))
+    return np.where(
+        uniform, start, np.where(part == 0.0, start, np.where(part == 1.0, end, np.where(round_taper, round_, linear)))
+    )

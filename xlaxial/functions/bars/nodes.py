@@ -69,7 +69,13 @@ def number_nodes(table: Table, members: Members, length: Floats) -> Nodes:
     if table.layout.has("Order"):
         order = table.values("Order", np.nan)[rows]
         for i in rows[np.isnan(order)].tolist():
-            members.fail_row(table, i, Problem("Order is blank", "number every row of the member"), "Order", int(members.row_member[i]))
+            members.fail_row(
+                table,
+                i,
+                Problem("Order is blank", "number every row of the member"),
+                "Order",
+                int(members.row_member[i]),
+            )
         sort = np.lexsort((rows, order, member))
         rows, member, order = rows[sort], member[sort], order[sort]
         for i in rows[1:][(np.diff(order) == 0) & (np.diff(member) == 0)].tolist():
@@ -91,7 +97,9 @@ def number_nodes(table: Table, members: Members, length: Floats) -> Nodes:
         end, labels = start + 1, None
         node_member = np.repeat(np.arange(members.count), count + 1)
         chain = np.ones(members.count, dtype=bool)
-    lengths = np.where(np.isnan(length), 0.0, length)[rows].astype(np.longdouble)  # long sums of many members lose no digits of one
+    lengths = np.where(np.isnan(length), 0.0, length)[rows].astype(
+        np.longdouble
+    )  # long sums of many members lose no digits of one
     ends = np.cumsum(lengths)
     from_start = ends - lengths
     if rows.size:
@@ -111,7 +119,9 @@ def number_nodes(table: Table, members: Members, length: Floats) -> Nodes:
     )
 
 
-def _labelled(table: Table, members: Members, rows: Ints, member: Ints) -> tuple[Ints, Ints, dict[tuple[int, Any], int], Ints]:
+def _labelled(
+    table: Table, members: Members, rows: Ints, member: Ints
+) -> tuple[Ints, Ints, dict[tuple[int, Any], int], Ints]:
     """Number the nodes that From and To name."""
     for name, other in (("From", "To"), ("To", "From")):
         column = table.labels.get(name, [None] * table.n_rows)
@@ -165,7 +175,11 @@ def find_places(table: Table, rows: Ints, member: Ints, nodes: Nodes, members: M
     node = np.full(rows.size, -1, dtype=np.int64)
     named = np.zeros(rows.size, dtype=bool)
     if labels is not None:
-        wanted = labels if rows.size == len(labels) and bool((np.diff(rows) == 1).all()) else [labels[i] for i in rows.tolist()]
+        wanted = (
+            labels
+            if rows.size == len(labels) and bool((np.diff(rows) == 1).all())
+            else [labels[i] for i in rows.tolist()]
+        )
         node = nodes.find(member, wanted)
         named = table.present("Node")[rows]
         for k in np.flatnonzero(named & (node < 0)).tolist():

@@ -38,7 +38,12 @@ def profile_rows(solution: Solution, asked: Wanted, mark: Any, points: Any) -> l
     """
     inputs = solution.inputs
     number = _POINTS if points is None or points == "" else points
-    if isinstance(number, bool) or not isinstance(number, (int, float)) or not 2 <= number <= _MOST_POINTS or number % 1:
+    if (
+        isinstance(number, bool)
+        or not isinstance(number, (int, float))
+        or not 2 <= number <= _MOST_POINTS
+        or number % 1
+    ):
         raise AxialError(Problem(f"points is {points!r}", f"write a whole number from 2 to {_MOST_POINTS}"))
     wanted = label_of(mark)
     if wanted is None and inputs.members.count == 1:
@@ -50,7 +55,9 @@ def profile_rows(solution: Solution, asked: Wanted, mark: Any, points: Any) -> l
     elif member in inputs.members.faults:
         problem = inputs.members.faults[member]
     elif not inputs.nodes.chain[member]:
-        problem = Problem("a branched member has no profile", "name an unbranched member", mark=str(wanted), code="#N/A")
+        problem = Problem(
+            "a branched member has no profile", "name an unbranched member", mark=str(wanted), code="#N/A"
+        )
     if problem is not None:
         return answer_rows(asked, 1, lambda word: [None], {0: problem})
     kept = int(np.flatnonzero(solution.pieces.kept == member)[0])

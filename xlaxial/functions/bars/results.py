@@ -45,6 +45,10 @@ class SegmentResults:
 
     def _by_segment(self, name: str) -> Floats:
         """Return a numeric result for every segment that is solved."""
+        made: Floats = self._of_kind(name)
+        return made
+
+    def _of_kind(self, name: str) -> Any:
         solution = self._solution
         state, bars = solution.state, solution.results
         match name:
@@ -218,6 +222,7 @@ class MemberResults:
         return out
 
     def status(self) -> list[Any]:
+        """Return ok and all that the statuses of its segments say, for every member."""
         inputs = self._solution.inputs
         rows = self._segments.status()
         out: list[Any] = [None] * inputs.members.count

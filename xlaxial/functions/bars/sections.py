@@ -56,8 +56,18 @@ def read_sections(table: Table, members: Members) -> Sections:
         round_taper = ways[1] & (last != diameter)
     if ways[2].any():
         outside, wall = table.values("Outside diameter", np.nan), table.values("Wall", np.nan)
-        fail(ways[2] & np.isnan(wall), "Wall", "a tube has no Wall", "write its wall thickness, or use Diameter for a solid round")
-        fail(ways[2] & (2.0 * wall > outside), "Wall", "the Wall is more than half of the Outside diameter", "mend one of them")
+        fail(
+            ways[2] & np.isnan(wall),
+            "Wall",
+            "a tube has no Wall",
+            "write its wall thickness, or use Diameter for a solid round",
+        )
+        fail(
+            ways[2] & (2.0 * wall > outside),
+            "Wall",
+            "the Wall is more than half of the Outside diameter",
+            "mend one of them",
+        )
         tube = np.pi * wall * (outside - wall)
         start, end = np.where(ways[2], tube, start), np.where(ways[2], tube, end)
     if table.layout.has("End area"):
@@ -66,14 +76,21 @@ def read_sections(table: Table, members: Members) -> Sections:
     if table.layout.has("End area", "End diameter", "Wall", "Diameter", "Outside diameter"):
         several = ways[0].astype(int) + ways[1] + ways[2] > 1
         fail(several, "Area", "the section is given in two ways", "keep one: " + _WAYS)
-        fail(table.present("End area") & ~ways[0], "End area", "End area stands without Area", "write Area, or clear End area")
+        fail(
+            table.present("End area") & ~ways[0],
+            "End area",
+            "End area stands without Area",
+            "write Area, or clear End area",
+        )
         fail(
             table.present("End diameter") & ~ways[1],
             "End diameter",
             "End diameter stands without Diameter",
             "write Diameter, or clear End diameter",
         )
-        fail(table.present("Wall") & ~ways[2], "Wall", "Wall stands without Outside diameter", "write it, or clear Wall")
+        fail(
+            table.present("Wall") & ~ways[2], "Wall", "Wall stands without Outside diameter", "write it, or clear Wall"
+        )
     fail(np.isnan(start), None, "the row has no section", _WAYS)
     net = table.values("Net area", np.nan)
     net_start, net_end = np.where(np.isnan(net), start, net), np.where(np.isnan(net), end, net)

@@ -142,7 +142,9 @@ def _solve_good(inputs: Inputs, rows: RowActions, whole: Problem | None) -> Solu
     if len(members.faults) > before:
         return None
     results = recover(network, actions, state, preload)
-    problems = ([whole] if inputs.segments.unusable and whole is not None and not inputs.problems() else []) + inputs.problems()
+    problems = (
+        [whole] if inputs.segments.unusable and whole is not None and not inputs.problems() else []
+    ) + inputs.problems()
     return Solution(inputs, whole, pieces, network, actions, preload, state, results, stands, problems)
 
 
@@ -160,7 +162,9 @@ def _report(inputs: Inputs, member: int, problem: Problem) -> None:
     """Report a problem of a member as a whole, at its first row."""
     row = int(np.flatnonzero(inputs.members.row_member == member)[0])
     table = inputs.segments
-    problem = replace(problem, mark=inputs.members.marks[member], cell=problem.cell or table.address(row), table=table.kind)
+    problem = replace(
+        problem, mark=inputs.members.marks[member], cell=problem.cell or table.address(row), table=table.kind
+    )
     table.problems.append(problem)
     inputs.members.fail(member, problem)
 

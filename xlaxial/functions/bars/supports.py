@@ -31,7 +31,9 @@ class ReactionResults:
             return out
         texts: list[Any] = [None] * self.n_rows
         if word.name == "State":
-            for entry, k in zip(solution.support_entries.tolist(), solution.network.supports.stiffness.tolist(), strict=True):
+            for entry, k in zip(
+                solution.support_entries.tolist(), solution.network.supports.stiffness.tolist(), strict=True
+            ):
                 texts[int(placed.rows[entry])] = "rigid" if np.isinf(k) else "elastic"
         elif word.name == "Status":
             notes = solution.member_notes()
@@ -71,4 +73,6 @@ class ReactionResults:
         return [] if table.unusable else np.flatnonzero(~held).tolist()
 
 
-_NO_SUPPORTS = Problem("the supports table has no rows", "include the rows below the headings in the range", table="supports")
+_NO_SUPPORTS = Problem(
+    "the supports table has no rows", "include the rows below the headings in the range", table="supports"
+)

@@ -111,8 +111,8 @@ def _optional(block: Any, kind: str, settings: Settings, one_row: bool) -> Table
 def _place(table: Table, members: Members, nodes: Nodes, sections: Sections, one_row: bool) -> Placed:
     """Find the member and the place of each row of a supports or loads table."""
     if table.unusable:
-        for member in range(members.count):
-            members.fail(member, table.layout.problems[0])
+        for each in range(members.count):
+            members.fail(each, table.layout.problems[0])
     if table.unusable or not table.n_rows:
         none = np.zeros(0, dtype=np.int64)
         return Placed(table, none, none, Places(none, none, np.zeros(0)))
@@ -173,7 +173,9 @@ def _check_supports(placed: Placed, members: Members) -> None:
         key = (int(places.node[k]), int(places.segment[k]), round(float(places.x[k]), 9) if inside else 0.0)
         if key in seen:
             first = table.address(int(placed.rows[seen[key]]))
-            problem = Problem(f"a rigid support stands at this place already ({first})", "keep one, or give one a Stiffness")
+            problem = Problem(
+                f"a rigid support stands at this place already ({first})", "keep one, or give one a Stiffness"
+            )
             members.fail_row(table, int(placed.rows[k]), problem, "Stiffness", int(placed.member[k]))
         seen.setdefault(key, k)
 
@@ -182,11 +184,16 @@ def missing_columns(table: Table) -> Problem | None:
     """Return the problem of a segments table that lacks a column which every row needs."""
     layout = table.layout
     if not layout.has("Length"):
-        what, remedy = "there is no heading Length", 'head a column "Length (mm)", or map it by the setting Heading: Length'
+        what, remedy = (
+            "there is no heading Length",
+            'head a column "Length (mm)", or map it by the setting Heading: Length',
+        )
     elif not layout.has("Area", "Diameter", "Outside diameter"):
         what, remedy = "no heading gives the section", 'head a column "Area (mm2)" or "Diameter (mm)"'
     elif not layout.has("E", "Material"):
         what, remedy = "no heading gives the modulus", 'head a column "E (GPa)" or "Material"'
     else:
         return None
-    return replace(Problem(what, remedy, table=TABLES[table.kind].name), cell=table.address(layout.heading_row - layout.first_row))
+    return replace(
+        Problem(what, remedy, table=TABLES[table.kind].name), cell=table.address(layout.heading_row - layout.first_row)
+    )

@@ -28,8 +28,24 @@ _METRIC = {"force": "kN", "stress": "MPa", "length": "mm", "strain": "µε", "li
 _CUSTOMARY = {"force": "kip", "stress": "ksi", "length": "in", "strain": "µε", "line load": "kip/ft"}
 _INCHES = (0.0254, 0.3048)
 
-_STANDARD_SEGMENTS = ("Force max", "Force min", "Stress max", "Stress min", "Elongation", "Displacement start", "Displacement end")
-_STANDARD_MEMBERS = ("Mark", "Force max", "Force min", "Stress max", "Stress min", "Displacement max", "Displacement min")
+_STANDARD_SEGMENTS = (
+    "Force max",
+    "Force min",
+    "Stress max",
+    "Stress min",
+    "Elongation",
+    "Displacement start",
+    "Displacement end",
+)
+_STANDARD_MEMBERS = (
+    "Mark",
+    "Force max",
+    "Force min",
+    "Stress max",
+    "Stress min",
+    "Displacement max",
+    "Displacement min",
+)
 _GOVERNING = ("Utilisation", "Pass", "Status")
 
 
@@ -108,7 +124,9 @@ def _segment_answer(solution: Solution, results: SegmentResults, asked: Wanted) 
         n_rows = max(len(table.block) - 1, 1)
         return answer_rows(asked, n_rows, lambda word: [None] * n_rows, dict.fromkeys(range(n_rows), first))
     if not table.n_rows:
-        empty = Problem("the segments table has no rows", "include the rows below the headings in the range", table="segments")
+        empty = Problem(
+            "the segments table has no rows", "include the rows below the headings in the range", table="segments"
+        )
         return answer_rows(asked, 1, lambda word: [None], {0: empty})
     blank = np.flatnonzero((solution.inputs.members.row_member < 0) & ~table.filled).tolist()
     return answer_rows(asked, table.n_rows, results, failed, [row for row in blank if row not in failed])
