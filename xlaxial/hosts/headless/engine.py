@@ -2,7 +2,8 @@
 
 Facts of the engine (formualizer 0.13) that are kept in here: a cell is never given None, which would mask a later
 spill; an error is a dictionary; None from a function would become 0, and a NaN would pass as a number; dates come out
-as datetimes, rounded, unless serial numbers are asked for; a value set by itself costs as much as a whole block.
+as datetimes, rounded, unless serial numbers are asked for; a value set by itself costs as much as a whole block; a new
+workbook has a sheet Sheet1 already, and a second one that differs in case alone is not found by formulas.
 """
 
 from __future__ import annotations
@@ -32,7 +33,7 @@ _KINDS = {
 }
 _BACK = {code: kind for kind, code in _KINDS.items()}
 CIRCULAR = "Circ"
-UNSUPPORTED = "NImpl"
+_FIRST_SHEET = "Sheet1"
 
 
 class Unevaluated:
@@ -90,14 +91,18 @@ class Engine:
         self._book = formualizer.Workbook(config=formualizer.WorkbookConfig(mode=mode, eval_config=settings))
         self._book.set_temporal_egress("serial")
         self._seconds = seconds
+        self._names: dict[str, str] = {}  # where the engine's name of a sheet is another one
 
     def add_function(self, name: str, function: Callable[..., Any]) -> None:
         """Add a function; it gets and returns what the engine holds."""
         self._book.register_function(name, function, min_args=0, max_args=None)
 
     def add_sheet(self, name: str) -> None:
-        """Add an empty sheet."""
-        self._book.add_sheet(name)
+        """Add an empty sheet; the engine begins with one of its own, which takes the place of ours in any case."""
+        if name.lower() == _FIRST_SHEET.lower():
+            self._names[name] = _FIRST_SHEET
+        else:
+            self._book.add_sheet(name)
 
     def set_rows(self, sheet: str, rows: Mapping[int, Sequence[Any]]) -> None:
         """Put rows of values into a sheet, each from column 1 on, by row number; blanks are passed over."""
@@ -124,17 +129,17 @@ class Engine:
         for first, last in ended:
             start = open_blocks.pop((first, last))
             block = [[to_engine(v) for v in rows[row][first:last]] for row in range(start, last_row + 1)]
-            self._book.set_values_batch(sheet, start, first + 1, block)
+            self._book.set_values_batch(self._names.get(sheet, sheet), start, first + 1, block)
 
     def set_value(self, sheet: str, row: int, column: int, value: Any) -> None:
         """Put a value into a cell; a blank is passed over."""
         if value is not None:
-            self._book.set_values_batch(sheet, row, column, [[to_engine(value)]])
+            self._book.set_values_batch(self._names.get(sheet, sheet), row, column, [[to_engine(value)]])
 
     def set_formula(self, sheet: str, row: int, column: int, formula: str) -> None:
         """Put a formula into a cell; raises ValueError where the engine cannot read it."""
         try:
-            self._book.set_formula(sheet, row, column, formula)
+            self._book.set_formula(self._names.get(sheet, sheet), row, column, formula)
         except (RuntimeError, formualizer.ParserError) as wrong:
             raise ValueError("it reads its own cell" if "Self-reference" in str(wrong) else str(wrong)) from None
 
@@ -158,7 +163,7 @@ class Engine:
 
     def value(self, sheet: str, row: int, column: int) -> Any:
         """Return a cell's value, or `Unevaluated`."""
-        return from_engine(self._book.get_value(sheet, row, column))
+        return from_engine(self._book.get_value(self._names.get(sheet, sheet), row, column))
 
 
 def _runs(values: Sequence[Any]) -> Iterator[tuple[int, int]]:

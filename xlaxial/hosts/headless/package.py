@@ -15,6 +15,7 @@ _COMPOUND_FILE = b"\xd0\xcf\x11\xe0\xa1\xb1\x1a\xe1"
 _MOST_BYTES = 1 << 30  # unpacked, all parts together
 _MOST_RATIO = 400  # unpacked over packed, of a part above a megabyte
 _MOST_PARTS = 20_000
+_STRICT = "purl.oclc.org/ooxml"  # in the namespaces of ISO/IEC 29500 strict files
 _SHEET_TYPE = "/worksheet"
 
 
@@ -36,7 +37,8 @@ def open_package(path: Path) -> zipfile.ZipFile:
         The file is missing, no workbook, encrypted, of the old binary kind, damaged or beyond the limits.
     """
     try:
-        head = path.open("rb").read(8)
+        with path.open("rb") as file:
+            head = file.read(8)
     except OSError as wrong:
         raise WorkbookError(f"{path.name}: cannot be read ({wrong.strerror})") from None
     if head.startswith(_COMPOUND_FILE):
@@ -47,12 +49,16 @@ def open_package(path: Path) -> zipfile.ZipFile:
         names = {info.filename for info in infos}
     except (zipfile.BadZipFile, OSError, ValueError, NotImplementedError):
         raise WorkbookError(f"{path.name}: is not a workbook, or is damaged") from None
+    fault = ""
     if len(infos) > _MOST_PARTS or sum(info.file_size for info in infos) > _MOST_BYTES:
-        raise WorkbookError(f"{path.name}: unpacks to more than the limits of {_MOST_PARTS} parts and 1 GiB")
-    if any(i.file_size > 1 << 20 and i.file_size > _MOST_RATIO * max(i.compress_size, 1) for i in infos):
-        raise WorkbookError(f"{path.name}: a part unpacks to more than {_MOST_RATIO} times its size")
-    if "[Content_Types].xml" not in names:
-        raise WorkbookError(f"{path.name}: is no workbook (no content types)")
+        fault = f"unpacks to more than the limits of {_MOST_PARTS} parts and 1 GiB"
+    elif any(i.file_size > 1 << 20 and i.file_size > _MOST_RATIO * max(i.compress_size, 1) for i in infos):
+        fault = f"a part unpacks to more than {_MOST_RATIO} times its size"
+    elif "[Content_Types].xml" not in names:
+        fault = "is no workbook (no content types)"
+    if fault:
+        package.close()
+        raise WorkbookError(f"{path.name}: {fault}")
     return package
 
 
@@ -121,6 +127,8 @@ def sheet_parts(package: zipfile.ZipFile) -> list[SheetPart]:
     found: list[tuple[str, str]] = []
 
     def sheet(name: str, attributes: dict[str, str], _: int) -> None:
+        if name == "workbook" and any(_STRICT in value for value in attributes.values()):
+            raise WorkbookError("is in the strict variant of the format; save it as an ordinary .xlsx")
         if name != "sheet":
             return
         key = next((v for k, v in attributes.items() if k.rpartition(":")[2] == "id"), "")

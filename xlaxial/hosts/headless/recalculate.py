@@ -23,7 +23,7 @@ from xlaxial.hosts.headless.workbook import LARGEST_ARRAY, Book, Formula, read_b
 
 SAME, DIFFERENT, NOT_STORED, FROZEN = "same", "different", "no stored value", "not recalculated"
 RTOL = 1e-9
-_LONG_NUMBER = re.compile(r"(?<![\w.])(?=[\d.]{17})\d{1,15}\.\d+(?![\w.])")
+_LONG_NUMBER = re.compile(r"(?<![\w.])(?=[\d.]{17})\d{1,15}\.\d+(?![\d.])")
 _TINY = 1e-12  # numbers below this part of the sheet's largest are equal to zero
 
 

@@ -137,7 +137,7 @@ class _Rewriting:
             self.made.calls_ours = True
             self.stack.append(_Frame(name, handled=True))
             return
-        if _EXTERNAL.match(text):
+        if _EXTERNAL.match(text) and not text.startswith("[0]!"):  # [0] is the workbook itself
             raise CannotEvaluate("calls a function of another workbook")
         if name in _HANDLED:
             self.stack.append(_Frame(name, handled=True))
@@ -188,6 +188,9 @@ class _Rewriting:
             raise CannotEvaluate("refers to several sheets as a stack")
         if value.startswith(_LOCAL):
             return value
+        sheet, mark, _ = value.rpartition("!")
+        if mark and sheet.strip("'").replace("''", "'").lower() not in self.context.extents:
+            return "#REF!"
         if "[" in value and "!" not in value:
             plain = expand(value, self.context.tables, self.sheet, self.row, self.column)
             if plain is not None:
