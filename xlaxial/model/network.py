@@ -7,9 +7,12 @@ distributed load towards +x are positive.
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
+
+_PART = 16384  # bars that are looked at together: long chains are read once, others are told early
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
@@ -51,6 +54,21 @@ class Network:
     def n_nodes(self) -> int:
         """Number of nodes of all members together."""
         return int(self.node_member.size)
+
+    @cached_property
+    def in_chains(self) -> bool:
+        """Whether members stand one after the other, each a chain whose bars and nodes are numbered along it."""
+        start, end = self.bars.start, self.bars.end
+        if not start.size or start.size != self.n_nodes - self.n_members:
+            return False
+        for a in range(0, start.size, _PART):
+            own = start[a : a + _PART + 1]
+            if not ((end[a : a + _PART] - own[:_PART] == 1).all() and (own[1:] > own[:-1]).all()):
+                return False
+        if self.n_members == 1:
+            return True
+        first = np.append(0, np.flatnonzero(self.node_member[1:] != self.node_member[:-1]) + 1)
+        return first.size == self.n_members and bool((self.node_member[first] == np.arange(first.size)).all())
 
 
 @dataclass(frozen=True)

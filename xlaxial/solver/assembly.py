@@ -53,7 +53,6 @@ class Assembly:
     def __init__(self, network: Network) -> None:
         self.network = network
         self.layout = Layout(network)
-        self.holds = Holds(network, network.supports.stiffness)  # supports, by the stiffnesses of the last `factor`
         self.links: Floats = np.zeros(0)  # (n_links,) N/m, stiffness of the layout's links
         self._whole = Tridiagonal()
         self._blocks = [] if self.layout.chain else _blocks(network)
@@ -90,18 +89,18 @@ class Assembly:
     def _factor(self, bar: Floats, support: Floats, left_out: Flags) -> int:
         """Factorise all but some members; -1, or a node of a member that fails."""
         network, layout, n = self.network, self.layout, self.network.n_nodes
-        self.holds = holds = Holds(network, support)
-        diagonal = np.zeros((1, n))
-        if holds.n_springs:
-            holds.add_springs(diagonal, holds.stiffness[None, :])
-        diagonal = diagonal[0]
+        self.holds = holds = Holds(network, support)  # by the stiffnesses that were factorised last
         self.links = layout.to_links(bar)
+        diagonal = np.empty(n)
         if layout.chain:
-            diagonal[:-1] += self.links
+            diagonal[-1] = 0.0
+            diagonal[:-1] = self.links
             diagonal[1:] += self.links
         else:
-            diagonal += np.bincount(network.bars.start, weights=bar, minlength=n)
+            diagonal[:] = np.bincount(network.bars.start, weights=bar, minlength=n)
             diagonal += np.bincount(network.bars.end, weights=bar, minlength=n)
+        if holds.n_springs:
+            holds.add_springs(diagonal[None, :], holds.stiffness[None, :])
         held = holds.rigid_node
         if left_out.any():
             held = np.union1d(held, np.flatnonzero(left_out[network.node_member]))

@@ -11,6 +11,7 @@ from xlaxial.model.network import Bars, Network, Supports
 from xlaxial.solver.holds import Holds
 from xlaxial.solver.layout import CHUNK, Layout, largest_at
 
+_STRETCH = 256  # nodes of a long chain between which partial sums are not looked at one by one; divides CHUNK
 _LONG = 1000  # nodes of a chain from which what is out of balance is added up with its signs
 _FAINT = 1e-20  # forces below this part of stiffness times displacement are rounding, even of two doubles
 _LEAST = 1e-300  # keeps a member without any force from dividing by zero
@@ -115,6 +116,7 @@ class Balance:
         self.start = np.empty((cases, layout.n_links))  # (n_cases, n_links) N, force at the start of each link
         self.end = self.start if self._span is None else np.empty_like(self.start)
         self.reaction = np.empty((cases, holds.size))  # (n_cases, n_supports) N
+        self._most = np.zeros((cases, 1))  # (n_cases, 1) N, largest |force| at starts where there is one chain
         self.scale = np.zeros((cases, layout.n_members))  # (n_cases, n_members) N, largest |force|
 
     def check(self, u: Floats, low: Floats | None = None) -> Floats:
@@ -153,6 +155,7 @@ class Balance:
         """Bar forces of a case and what they and the loads leave out of balance, along chains, part by part."""
         n, force, start, end = self.layout.n_links, self._equations.force[case], self.start[case], self.end[case]
         row, moved, left, before = out[case], u[case], None if low is None else low[case], 0.0
+        most, single = 0.0, self.layout.single
         for a in range(0, n, CHUNK):
             b = min(a + CHUNK, n)
             pull, push = start[a:b], end[a:b]
@@ -166,7 +169,10 @@ class Balance:
             row[a] -= before
             row[a + 1 : b] -= push[:-1]
             before = push[-1]
+            if single:
+                most = max(most, float(pull.max()), -float(pull.min()))
         row[n] = force[n] - before
+        self._most[case] = most
 
     def _add_springs(self, out: Floats, u: Floats, low: Floats | None) -> None:
         """Add reactions of springs to nodal forces."""
@@ -201,7 +207,7 @@ class Balance:
             (n_cases, n_nodes) m; given, forces that are rounding of stiffness times displacement count as none.
         """
         layout = self.layout
-        most = layout.bar_most(self.start)
+        most = self._most.copy() if layout.single else layout.bar_most(self.start)
         if self._span is not None:
             np.maximum(most, layout.bar_most(self.end), out=most)
         if self.holds.size:
@@ -271,10 +277,18 @@ def _lost(a: Floats, b: Floats, difference: Floats) -> Floats:
 
 
 def _spread_of_sums(values: Floats) -> float:
-    """Largest less least partial sum, that of nothing included."""
-    total = most = least = 0.0
+    """Bound of the largest less the least partial sum, that of nothing included.
+
+    From sums at the ends of stretches, and the most that they can change inside one.
+    """
+    total = most = least = inside = 0.0
     for a in range(0, values.size, CHUNK):
-        sums = np.cumsum(values[a : a + CHUNK])
-        most, least = max(most, total + float(sums.max())), min(least, total + float(sums.min()))
-        total += float(sums[-1])
-    return most - least
+        own = values[a : a + CHUNK]
+        parts = (own.reshape(-1, _STRETCH), own[:0]) if own.size == CHUNK else (own[:0].reshape(0, 1), own)
+        for part in (parts[0], parts[1].reshape(1, -1)):
+            if part.size:
+                sums = np.cumsum(part.sum(axis=1))
+                most, least = max(most, total + float(sums.max())), min(least, total + float(sums.min()))
+                total += float(sums[-1])
+                inside = max(inside, float(np.abs(part).sum(axis=1).max()))
+    return most - least + 2.0 * inside

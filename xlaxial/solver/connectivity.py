@@ -8,7 +8,6 @@ import numpy as np
 
 from xlaxial.arrays import Flags, Ints
 from xlaxial.model.network import Network
-from xlaxial.solver.layout import Layout
 
 
 @dataclass(frozen=True)
@@ -30,7 +29,7 @@ def pieces_of(network: Network, stays: Flags | None = None) -> tuple[int, Ints]:
     stays : Flags, optional
         (n_bars,) bars that count; all of them where left out.
     """
-    chain = Layout(network).chain
+    chain = network.in_chains
     if chain and stays is None:
         return network.n_members, network.node_member
     start, end = network.bars.start, network.bars.end

@@ -12,7 +12,8 @@ from xlaxial.model.network import Actions, LinearState, Network
 from xlaxial.solver.assembly import Assembly
 from xlaxial.solver.balance import Balance, Equations
 from xlaxial.solver.dominant import MOST_NODES, Dominant
-from xlaxial.solver.flexibility import flexibility, load_lever
+from xlaxial.solver.flexibility import load_lever, stiffness
+from xlaxial.solver.holds import Holds
 from xlaxial.solver.layout import CHUNK, acts, in_rows
 
 TRUSTED = 1e-11  # bound of the error of any force, relative to its member's largest, up to which no more is done
@@ -51,7 +52,8 @@ def solve_linear(
         All nan in members with numbers that are not finite, stiffness below zero, or forces that cannot be told.
     """
     equations = _equations(network, actions, preload)
-    found = solve_equations(equations, assembly) if network.n_nodes else Found.empty(equations)
+    with np.errstate(all="ignore"):  # what is not finite is found by its bound, and given as nan
+        found = solve_equations(equations, assembly) if network.n_nodes else Found.empty(equations)
     return LinearState(
         found.displacement.T,
         found.start.T,
@@ -100,8 +102,6 @@ class Found:
 def _equations(network: Network, actions: Actions, preload: Floats | None) -> Equations:
     """Put actions in rows, loads along bars turned into their free lengthening and end loads."""
     bars = network.bars
-    bar = flexibility(bars)
-    np.divide(1.0, bar, out=bar)
     free = in_rows(actions.imposed)
     if preload is not None and acts(preload):
         free = free + preload.T
@@ -112,7 +112,7 @@ def _equations(network: Network, actions: Actions, preload: Floats | None) -> Eq
         span = q * bars.length
     return Equations(
         network,
-        bar,
+        stiffness(bars),
         free if acts(free) else None,
         span,
         in_rows(actions.force),
@@ -123,13 +123,17 @@ def _equations(network: Network, actions: Actions, preload: Floats | None) -> Eq
 def solve_equations(equations: Equations, assembly: Assembly | None = None) -> Found:
     """Solve all members; those that need more are solved again by themselves."""
     network = equations.network
-    finite = equations.finite()
-    if finite is not None:
-        return _put_together(equations, Found.empty(equations), finite)
     if assembly is None:
         assembly = Assembly(network)
+    positive = equations.bar.min(initial=0.0) >= 0.0 and network.supports.stiffness.min(initial=0.0) >= 0.0
+    finite = None if positive and assembly.layout.chain else equations.finite()
+    if finite is not None:
+        return _put_together(equations, Found.empty(equations), finite)
     failed = assembly.factor(equations.bar, network.supports.stiffness)
     if failed.any():
+        finite = equations.finite()
+        if finite is not None:
+            return _put_together(equations, Found.empty(equations), finite)
         return _alone(equations, _put_together(equations, Found.empty(equations), ~failed), failed)
     balance = Balance(equations, assembly.layout, assembly.links, assembly.holds)
     u, out = _first(equations, balance, assembly)
@@ -137,6 +141,10 @@ def solve_equations(equations: Equations, assembly: Assembly | None = None) -> F
     poor = _poor(bound, TRUSTED)
     if not poor.any():
         return _found(balance, u, None, bound)
+    if not np.isfinite(bound).all():
+        finite = equations.finite()
+        if finite is not None:
+            return _put_together(equations, Found.empty(equations), finite)
     if 2 * np.count_nonzero(poor) < poor.size:
         return _put_together(equations, _found(balance, u, None, bound), poor)
     low, bound = _refine(balance, assembly, u, out)
@@ -152,29 +160,28 @@ def _poor(bound: Floats, enough: float) -> Flags:
 
 def _first(equations: Equations, balance: Balance, solver: _Solver) -> tuple[Floats, Floats]:
     """Displacements as the factors give them, and what is then out of balance."""
-    network = equations.network
-    u = np.zeros_like(equations.force)
-    if equations.settlement is not None:
-        rigid = network.supports.stiffness == np.inf
-        u[:, network.supports.node[rigid]] = equations.settlement[:, rigid]
+    holds = balance.holds
     if equations.settlement is None and equations.free is None and equations.span is None:
-        np.copyto(u, equations.force)
-        u[:, balance.holds.rigid_node] = 0.0
+        u = equations.force.copy()
+        u[:, holds.rigid_node] = 0.0
         solver.solve_rows(u)
         return u, balance.check(u)
+    u = np.zeros_like(equations.force)
+    if equations.settlement is not None:
+        u[:, holds.rigid_node] = equations.settlement[:, holds.rigid]
     more = balance.check(u)
     solver.solve_rows(more)
     u += more
     return u, balance.check(u)
 
 
-def _refine(balance: Balance, solver: _Solver, u: Floats, out: Floats) -> tuple[Floats, Floats]:
+def _refine(balance: Balance, solver: _Solver, u: Floats, out: Floats) -> tuple[Floats | None, Floats]:
     """Refine u in place; return what it lacks to a sum of two doubles, and the bound of the error of any force."""
-    low = np.zeros_like(u)
+    low: Floats | None = None
     worst = np.inf
     for _ in range(_ROUNDS):
         solver.solve_rows(out)
-        _add(u, low, out)
+        low = _add(u, low, out)
         out = balance.check(u, low)
         bound = balance.measure(out, TRUSTED, u)
         now = float(bound.max(initial=0.0))
@@ -184,18 +191,24 @@ def _refine(balance: Balance, solver: _Solver, u: Floats, out: Floats) -> tuple[
     return low, bound
 
 
-def _add(high: Floats, low: Floats, more: Floats) -> None:
-    """Add to a sum of two doubles in place (Knuth, TAOCP vol. 2, 4.2.2, theorem B)."""
-    for h, w, m in zip(high, low, more, strict=True):
-        for a in range(0, h.size, CHUNK):
-            own, add = h[a : a + CHUNK], m[a : a + CHUNK]
+def _add(high: Floats, low: Floats | None, more: Floats) -> Floats:
+    """Add to a sum of two doubles in place, and return its lesser part, in the place of `more` where there was none.
+
+    Error-free sum: Knuth, TAOCP vol. 2, 4.2.2, theorem B.
+    """
+    for case in range(high.shape[0]):
+        for a in range(0, high.shape[1], CHUNK):
+            own, add = high[case, a : a + CHUNK], more[case, a : a + CHUNK]
             total = own + add
             back = total - own
             add -= back
             own -= total - back
-            own += add
-            w[a : a + CHUNK] += own
-            h[a : a + CHUNK] = total
+            add += own
+            own[:] = total
+    if low is None:
+        return more
+    low += more
+    return low
 
 
 def _put_together(equations: Equations, found: Found, members: Flags) -> Found:
@@ -215,7 +228,9 @@ def _alone(equations: Equations, found: Found, members: Flags) -> Found:
         if own.n_nodes <= MOST_NODES:
             solver = Dominant(own, part.bar, own.supports.stiffness)
             assembly = Assembly(own)
-            balance = Balance(part, assembly.layout, assembly.layout.to_links(part.bar), assembly.holds)
+            balance = Balance(
+                part, assembly.layout, assembly.layout.to_links(part.bar), Holds(own, own.supports.stiffness)
+            )
             u, out = _first(part, balance, solver)
             low, bound = _refine(balance, solver, u, out)
             if (bound <= _REFUSED).all():
@@ -227,9 +242,8 @@ def _alone(equations: Equations, found: Found, members: Flags) -> Found:
 def _found(balance: Balance, u: Floats, low: Floats | None, bound: Floats) -> Found:
     """Results of a state that has been checked last."""
     layout = balance.layout
-    rise = layout.rise(u)
+    rise = layout.rise(u, low)
     if low is not None:
-        rise += layout.rise(low)
         u += low
     start = layout.to_bars(balance.start)
     end = start if balance.end is balance.start else layout.to_bars(balance.end)

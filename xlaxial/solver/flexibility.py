@@ -30,6 +30,16 @@ def flexibility(bars: Bars) -> Floats:
     return out
 
 
+def stiffness(bars: Bars) -> Floats:
+    """Return the stiffness of each bar, 1/f, (n_bars,) N/m."""
+    tapered = _tapered(bars, bars.area_end)
+    out = bars.modulus * bars.area_start
+    out /= bars.length
+    if tapered.size:
+        out[tapered] /= _means(bars.area_start[tapered], bars.area_end[tapered], bars.round_taper[tapered])[0]
+    return out
+
+
 def load_lever(bars: Bars) -> Floats:
     """Return int x dx/(E A) of each bar, (n_bars,) m2/N."""
     return integrals(bars, bars.length, bars.area_end)[1]

@@ -31,14 +31,11 @@ class Layout:
         self.n_nodes, self.n_members = network.n_nodes, network.n_members
         self._node_member, self._bar_member = network.node_member, bars.member
         n_bars = bars.start.size
-        self.chain = bool(n_bars) and n_bars == self.n_nodes - self.n_members and _in_order(bars.start, bars.end)
-        self.single = self.chain and n_bars == self.n_nodes - 1
+        self.chain = network.in_chains
+        self.single = self.chain and self.n_members == 1
         self.first = np.zeros(1, dtype=np.int64)  # (n_members,) first node of each, where `chain`
         if self.n_members > 1 and self.chain:
-            steps = network.node_member[1:] != network.node_member[:-1]
-            self.first = np.append(0, np.flatnonzero(steps) + 1)
-            ordered = bool((network.node_member[self.first] == np.arange(self.first.size)).all())
-            self.chain = ordered and self.first.size == self.n_members
+            self.first = np.append(0, np.flatnonzero(network.node_member[1:] != network.node_member[:-1]) + 1)
         self.n_links = self.n_nodes - 1 if self.chain else n_bars
 
     def to_links(self, values: Floats) -> Floats:
@@ -57,10 +54,15 @@ class Layout:
         """Pick bar values from links, (..., n_links) to (..., n_bars)."""
         return values if not self.chain or self.single else values.take(self.start, axis=-1)
 
-    def rise(self, u: Floats) -> Floats:
-        """Differences of nodal values along links, (n_cases, n_links)."""
+    def rise(self, u: Floats, low: Floats | None) -> Floats:
+        """Differences of nodal values u + low along links, (n_cases, n_links)."""
         left, right = self.ends(u)
         out: Floats = right - left
+        if low is not None:
+            left, right = self.ends(low)
+            for row, w, e in zip(out, left, right, strict=True):
+                for a in range(0, row.size, CHUNK):
+                    row[a : a + CHUNK] += e[a : a + CHUNK] - w[a : a + CHUNK]
         return out
 
     def ends(self, u: Floats) -> tuple[Floats, Floats]:
@@ -101,15 +103,6 @@ class Layout:
         for row, own in zip(out, values, strict=True):
             row[:] = np.bincount(at, weights=own, minlength=self.n_members)
         return out
-
-
-def _in_order(start: Ints, end: Ints) -> bool:
-    """Whether every bar ends at the node after its start, and each starts further on than the one before."""
-    for a in range(0, start.size, CHUNK):
-        own = start[a : a + CHUNK + 1]
-        if not ((end[a : a + CHUNK] - own[:CHUNK] == 1).all() and (own[1:] > own[:-1]).all()):
-            return False
-    return True
 
 
 def largest_at(out: Floats, at: Ints, values: Floats) -> Floats:

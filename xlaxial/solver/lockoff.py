@@ -11,7 +11,7 @@ from xlaxial.model.network import Network, Supports
 from xlaxial.solver.balance import Equations
 from xlaxial.solver.connectivity import pieces_of
 from xlaxial.solver.displacement import solve_equations
-from xlaxial.solver.flexibility import flexibility
+from xlaxial.solver.flexibility import flexibility, stiffness
 from xlaxial.solver.runs import runs
 
 _SAME = 1e-9  # preloads that differ by less, relatively, are equal
@@ -64,13 +64,14 @@ def lock_off(network: Network, preload: Floats, preloaded: Flags) -> LockOff:
     unlike = given[np.logical_not(np.abs(preload[given] - meant) <= _SAME * np.abs(meant)).any(axis=1)]
     held, unheld = _held_apart(network, carrier, preload)
     flexible = flexibility(bars)
-    stiffness = 1.0 / flexible
-    stiffness[carrier] = 0.0
+    left = stiffness(bars)
+    left[carrier] = 0.0
     force = np.zeros((n_cases, network.n_nodes))
     for row, pull in zip(force, preload[carrier].T, strict=True):
         np.add.at(row, bars.start[carrier], pull)
         np.subtract.at(row, bars.end[carrier], pull)
-    solved = solve_equations(Equations(held, stiffness, None, None, force, None))
+    with np.errstate(all="ignore"):  # what is not finite comes out as nan
+        solved = solve_equations(Equations(held, left, None, None, force, None))
     imposed[carrier] = solved.elongation.T[carrier] - flexible[carrier, None] * preload[carrier]
     imposed[unheld] = 0.0
     return LockOff(imposed, unlike, unheld)

@@ -8,7 +8,6 @@ import numpy as np
 
 from xlaxial.arrays import Floats, Ints
 from xlaxial.model.network import Network
-from xlaxial.solver.layout import Layout
 
 
 @dataclass(frozen=True)
@@ -34,7 +33,7 @@ def runs(network: Network) -> Runs:
     bars, n_bars = network.bars, network.bars.start.size
     supported = np.zeros(network.n_nodes, dtype=bool)
     supported[network.supports.node] = True
-    if Layout(network).chain:
+    if network.in_chains:
         begins = supported[bars.start]
         begins[0] = True
         begins[1:] |= bars.start[1:] != bars.end[:-1]
