@@ -50,7 +50,9 @@ class Material:
             It depends on the thickness and none is given, or the thickness is beyond the source's.
         """
         if thickness is None:
-            if len({(s.yield_stress, s.tensile) for s in self.strengths}) > 1 or self.strengths[0].thickness < float("inf"):
+            if len({(s.yield_stress, s.tensile) for s in self.strengths}) > 1 or self.strengths[0].thickness < float(
+                "inf"
+            ):
                 what = f"the strength of {self.name} depends on its thickness"
                 raise AxialError(Problem(what, 'say which, as in "Yield, 40 mm", or fill in Yield'))
             return self.strengths[0]

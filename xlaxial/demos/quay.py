@@ -146,15 +146,11 @@ def _schedule(book: Any, ties: list[dict[str, Any]]) -> int:
         "First problem",
         f'=IF(B5=0,"none",INDEX({problems},2,1)&": "&INDEX({problems},2,2)&"; "&INDEX({problems},2,3))',
     )
-    style.line(sheet, 4, 13, "Largest utilisation", f"=MAX(T{first}:T{last})", "0.000")
-    style.line(sheet, 5, 13, "Segments that do not pass", f"=COUNTA(A{first}:A{last})-COUNTIF(U{first}:U{last},1)", "0")
-    style.line(sheet, 6, 13, "Mass of ties (t)", f"=SUM(K{first}:K{last})/1000", "0.00")
-    for row in (4, 5, 6):  # the value stands clear of its long label
-        sheet.cell(row, 16).value, sheet.cell(row, 14).value = sheet.cell(row, 14).value, None
-        sheet.cell(row, 16).font, sheet.cell(row, 16).number_format = (
-            sheet.cell(row, 14).font.copy(),
-            sheet.cell(row, 14).number_format,
-        )
+    style.line(sheet, 4, 13, "Largest utilisation", f"=MAX(T{first}:T{last})", "0.000", away=3)
+    style.line(
+        sheet, 5, 13, "Segments that do not pass", f"=COUNTA(A{first}:A{last})-COUNTIF(U{first}:U{last},1)", "0", away=3
+    )
+    style.line(sheet, 6, 13, "Mass of ties (t)", f"=SUM(K{first}:K{last})/1000", "0.00", away=3)
     style.widths(sheet, (16, 18, 9, 10, 10, 8, 10, 11, 10, 2, 9, 2, 10, 10, 10, 10.5, 10.5, 12.5, 12.5, 10.5, 7, 2, 9))
     sheet.freeze_panes = sheet.cell(first, 3)
     style.printing(sheet, f"A1:W{last}", CAUTION, rows=f"{_TOP}:{_TOP}")
@@ -186,15 +182,9 @@ def _supports(book: Any, ties: list[dict[str, Any]]) -> None:
         ("0.0", "0.0"),
         f"=AX_REACTIONS(Segments,Supports,Loads,G{_TOP}:H{_TOP},,Settings)",
     )
-    style.line(sheet, 4, 1, "Sum of reactions (kN)", f"=SUM(G{_TOP + 1}:G{last})", "0.0")
-    style.line(sheet, 5, 1, "Sum of loads (kN)", "=SUM(Loads!F9:F200)", "0.0")
-    style.line(sheet, 6, 1, "Out of balance (kN)", "=ROUND(C4+C5,6)", "0.000000")
-    for row in (4, 5, 6):
-        sheet.cell(row, 3).value, sheet.cell(row, 2).value = sheet.cell(row, 2).value, None
-        sheet.cell(row, 3).font, sheet.cell(row, 3).number_format = (
-            sheet.cell(row, 2).font.copy(),
-            sheet.cell(row, 2).number_format,
-        )
+    style.line(sheet, 4, 1, "Sum of reactions (kN)", f"=SUM(G{_TOP + 1}:G{last})", "0.0", away=2)
+    style.line(sheet, 5, 1, "Sum of loads (kN)", "=SUM(Loads!F9:F200)", "0.0", away=2)
+    style.line(sheet, 6, 1, "Out of balance (kN)", "=ROUND(C4+C5,6)", "0.000000", away=2)
     style.widths(sheet, (9, 14, 12, 12, 18, 2, 12, 12))
     sheet.freeze_panes = sheet.cell(_TOP + 1, 1)
     style.printing(sheet, f"A1:H{last}", CAUTION, rows=f"{_TOP}:{_TOP}", portrait=True)
@@ -379,7 +369,6 @@ def _notes(book: Any, n_rows: int) -> None:
     style.line(sheet, 24, 1, "Light ties that do not pass", "='Light ties'!B11", "0")
     style.text(sheet, 26, "Made by", bold=True)
     style.block(sheet, 27, 1, 2, ("@",), "=AX_ABOUT()")
-    sheet.cell(27, 1).alignment = sheet.cell(28, 1).alignment = sheet.cell(5, 1).alignment.copy(wrap_text=False)
     style.widths(sheet, (28, 12, 14, 14, 14, 14, 14, 14))
     style.printing(sheet, "A1:H28", CAUTION, portrait=True)
     _name(book, "Settings", "Notes", "A17:B18")

@@ -71,11 +71,13 @@ def block(sheet: Any, row: int, column: int, n_rows: int, formats: Sequence[str]
     return area
 
 
-def line(sheet: Any, row: int, column: int, label: str, value: Any, number_format: str = "General") -> None:
-    """Write a label and a value beside it."""
+def line(
+    sheet: Any, row: int, column: int, label: str, value: Any, number_format: str = "General", *, away: int = 1
+) -> None:
+    """Write a label, and a value so many columns away from it."""
     cell = sheet.cell(row, column, label)
     cell.font = Font(FONT, size=9)
-    cell = sheet.cell(row, column + 1, value)
+    cell = sheet.cell(row, column + away, value)
     cell.font = Font(FONT, size=9, bold=True)
     cell.number_format = number_format
     cell.alignment = Alignment(horizontal="left")

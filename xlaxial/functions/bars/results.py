@@ -11,6 +11,7 @@ from xlaxial.functions.bars.solution import Solution
 from xlaxial.tables.words import ResultWord
 
 ALL_CASES = "all cases"
+_LEVEL = 1e-9  # utilisations this near to each other, relatively, are level: the first of them governs
 
 
 class SegmentResults:
@@ -217,7 +218,7 @@ class MemberResults:
         out = np.full(members.count, -1, dtype=np.int64)
         for row in np.flatnonzero(members.row_member >= 0)[::-1].tolist():
             member = members.row_member[row]
-            if utilisation[row] == worst[member]:
+            if utilisation[row] >= worst[member] * (1.0 - _LEVEL):
                 out[member] = row
         return out
 
