@@ -115,12 +115,12 @@ def test_a_wrong_member_fails_alone_and_no_summary_passes_over_it(product: LiveO
 
 
 def test_one_call_a_row_gives_what_the_block_gives(product: LiveOffice) -> None:
-    rows = [["formula", _SHEET, f"R{row}", f'=AX_FORCES($A{row}:$F{row};$H$1:$J$3;;"kN";;;$A$1:$F$1)'] for row in (2,)]
+    row = ["formula", _SHEET, "R2", '=AX_FORCES($A2:$F2;$H$1:$J$3;;"kN";;;$A$1:$F$1)']
     one = [["S1", 540, 1100, 70, 23, 30]]
     supports = [["Mark", "Node", "Stiffness (kN/mm)"], ["S1", 0, 70], ["S1", 1, 150]]
     table = [*_fill("A", 1, [_SEGMENTS[0], *one]), *_fill("H", 1, supports)]
     block = ["formula", _SHEET, "S2", '=AX_FORCES(A1:F2;H1:J3;;"kN")']
-    seen = product.steps(*table, *rows, block, _read("R2:S2"))[-1][0]
+    seen = product.steps(*table, row, block, _read("R2:S2"))[-1][0]
     # 540 mm heated by 30 K between springs of 70 and 150 kN/mm: alpha dT L / (L/EA + 1/kA + 1/kB)
     force = -23e-6 * 30 * 540 / (540 / (70 * 1100) + 1 / 70 + 1 / 150)
     assert seen == pytest.approx([force, force], rel=1e-9)

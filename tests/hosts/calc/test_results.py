@@ -10,6 +10,8 @@ import openpyxl
 import pytest
 from openpyxl.worksheet.formula import ArrayFormula
 
+from xlaxial.hosts.calc.office import Office, convert
+
 pytestmark = pytest.mark.office
 
 Calculate = Callable[[Path], Path]
@@ -81,9 +83,28 @@ def test_a_table_may_hold_the_answer_of_another_call(sheet: Any) -> None:
     assert sheet["P3"].value == "#VALUE!"
 
 
-def test_names_stay_as_written_in_an_xlsx_file_and_through_an_ods_file(saved: Path) -> None:
+def test_names_stay_as_written_in_an_xlsx_file(saved: Path) -> None:
     formulas = openpyxl.load_workbook(saved)["Ties"]
     assert formulas["N5"].value == "=AX_HELLO()"
     assert formulas["N6"].value == '=AX_DATUM("twelve")+1'
     assert formulas["P5"].value == '=AX_DATUM("twelve")'
     assert (formulas["D1"].value.ref, formulas["D1"].value.text) == ("D1:K3", "=AX_GRID(Ties!A1:B2)")
+
+
+def test_a_second_opening_recalculates_from_the_saved_formulas(saved: Path, calculate: Calculate, save: Save) -> None:
+    """What Calc has saved, with an input edited outside and the stored values left old, is recalculated wholly."""
+    book = openpyxl.load_workbook(saved)
+    book["Ties"]["B2"] = 1500
+    again = openpyxl.load_workbook(calculate(save(book, "again.xlsx")), data_only=True)["Ties"]
+    assert _values(again, "M1:M5") == [[1500], ["#VALUE!"], ["#N/A"], [800], [750]]
+    assert again["P5"].value == 12
+
+
+def test_names_survive_the_program_s_own_file_type(
+    saved: Path, office: Office, extensions: Path, calculate: Calculate, tmp_path: Path
+) -> None:
+    (tmp_path / "ods").mkdir()
+    own = convert(saved, tmp_path / "ods", tmp_path / "profile", extensions, office=office, to="ods")
+    back = calculate(own)
+    assert openpyxl.load_workbook(back)["Ties"]["N6"].value == '=AX_DATUM("twelve")+1'
+    assert openpyxl.load_workbook(back, data_only=True)["Ties"]["N6"].value == 13
