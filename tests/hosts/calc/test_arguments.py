@@ -8,6 +8,7 @@ from pathlib import Path
 
 import openpyxl
 import pytest
+from openpyxl.utils.datetime import CALENDAR_MAC_1904
 from openpyxl.workbook.defined_name import DefinedName
 from openpyxl.worksheet.table import Table
 
@@ -87,3 +88,17 @@ def answers(calculate: Callable[[Path], Path], save: Callable[[openpyxl.Workbook
 @pytest.mark.parametrize("formula", CALLS)
 def test_what_reaches_the_function(answers: dict[str, object], formula: str) -> None:
     assert answers[formula] == CALLS[formula]
+
+
+def test_dates_follow_the_workbook_s_own_calendar(
+    calculate: Callable[[Path], Path], save: Callable[[openpyxl.Workbook, str], Path]
+) -> None:
+    book = openpyxl.Workbook()
+    book.epoch = CALENDAR_MAC_1904
+    sheet = book.active
+    assert sheet is not None
+    sheet["A1"] = dt.datetime(2024, 3, 4)
+    sheet["B1"] = "=AX_ECHO(A1)"
+    saved = openpyxl.load_workbook(calculate(save(book, "calendar.xlsx")), data_only=True)
+    told = saved["Sheet"]["B1"].value
+    assert told == "Sheet!r1c1 [[datetime.datetime(2024, 3, 4, 0, 0)]] | None | None | None"

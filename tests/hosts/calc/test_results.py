@@ -45,6 +45,9 @@ def saved(calculate: Calculate, save: Save) -> Path:
     sheet["P3"] = "=AX_ROWS(M1:M2)"  # a table that is itself an answer
     sheet["P4"] = '=F1&""'
     sheet["P5"] = '=ax_datum("twelve")'
+    sheet["Q1"] = "=ROWS(AX_ROWS(A1:B5000))"
+    sheet["Q2"] = "=ROWS(AX_ROWS(A:B))"
+    sheet["Q3"] = "=COLUMNS(AX_ROWS(A1:B5000))"
     return calculate(save(book, "results.xlsx"))
 
 
@@ -77,6 +80,10 @@ def test_a_fault_is_an_error_value_without_a_trace(sheet: Any) -> None:
 def test_single_cells_work_inside_other_formulas(sheet: Any) -> None:
     assert [sheet[cell].value for cell in ("N5", "N6", "N7")] == ["hello", 13, -1]
     assert [sheet[cell].value for cell in ("P1", "P2", "P4", "P5")] == [1200, 800, "text", 12]
+
+
+def test_a_range_with_an_end_keeps_its_height_and_whole_columns_end_with_the_last_filled_cell(sheet: Any) -> None:
+    assert [sheet[cell].value for cell in ("Q1", "Q2", "Q3")] == [4999, 5, 1]
 
 
 def test_a_table_may_hold_the_answer_of_another_call(sheet: Any) -> None:
