@@ -107,8 +107,9 @@ class Assembly:
         diagonal[held] = 1.0
         if layout.chain:
             coupling = -self.links
-            coupling[held[held < n - 1]] = 0.0
-            coupling[held[held > 0] - 1] = 0.0
+            if held.size:
+                coupling[held[held < n - 1]] = 0.0
+                coupling[held[held > 0] - 1] = 0.0
             return self._whole.factor(diagonal, coupling) - 1
         fixed = np.zeros(n, dtype=bool)
         fixed[held] = True

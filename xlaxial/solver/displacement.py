@@ -14,7 +14,7 @@ from xlaxial.solver.balance import Balance, Equations
 from xlaxial.solver.dominant import MOST_NODES, Dominant
 from xlaxial.solver.flexibility import load_lever, stiffness
 from xlaxial.solver.holds import Holds
-from xlaxial.solver.layout import CHUNK, acts, in_rows
+from xlaxial.solver.layout import CHUNK, in_rows
 
 TRUSTED = 1e-11  # bound of the error of any force, relative to its member's largest, up to which no more is done
 _TOLERATED = 1e-10  # bound up to which factors free of subtractions are not called in
@@ -103,20 +103,20 @@ def _equations(network: Network, actions: Actions, preload: Floats | None) -> Eq
     """Put actions in rows, loads along bars turned into their free lengthening and end loads."""
     bars = network.bars
     free = in_rows(actions.imposed)
-    if preload is not None and acts(preload):
+    if preload is not None and preload.any():
         free = free + preload.T
     span = None
-    if acts(actions.distributed):
+    if actions.distributed.any():
         q = in_rows(actions.distributed)
         free = free - q * load_lever(bars)
         span = q * bars.length
     return Equations(
         network,
         stiffness(bars),
-        free if acts(free) else None,
+        free if free.any() else None,
         span,
         in_rows(actions.force),
-        in_rows(actions.settlement) if acts(actions.settlement) else None,
+        in_rows(actions.settlement) if actions.settlement.any() else None,
     )
 
 

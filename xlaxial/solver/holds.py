@@ -23,12 +23,12 @@ class Holds:
         node = network.supports.node
         self.size = node.size
         rigid = stiffness == np.inf
-        self.rigid: Ints = np.flatnonzero(rigid)  # (n_rigid,) supports
+        self.rigid: Ints = rigid.nonzero()[0]  # (n_rigid,) supports
         self.rigid_node: Ints = node.take(self.rigid)
         self.spring: Ints | None = None  # (n_springs,) supports; None where all are springs
         self.spring_node, self.stiffness = node, stiffness
         if self.rigid.size:
-            self.spring = np.flatnonzero(~rigid)
+            self.spring = (~rigid).nonzero()[0]
             self.spring_node, self.stiffness = node.take(self.spring), stiffness.take(self.spring)
         n, at = self.spring_node.size, self.spring_node
         self._repeated = n > 1 and not bool((at[1:] > at[:-1]).all())

@@ -115,8 +115,3 @@ def largest_at(out: Floats, at: Ints, values: Floats) -> Floats:
 def in_rows(values: Floats) -> Floats:
     """Turn values with a column per case into rows per case, contiguous."""
     return np.ascontiguousarray(values.T)
-
-
-def acts(values: Floats) -> bool:
-    """Whether any value is not zero (nan is not)."""
-    return bool(values.size) and not (values.max() == 0.0 == values.min())
