@@ -91,3 +91,8 @@ class Spills:
         block = answer if isinstance(answer, list) else [[answer]]
         self.sizes[int(number)] = len(block), max(map(len, block))
         return [[0.0 if cell is None else cell for cell in row] for row in block]
+
+
+def anchored(cell: Any, spilled: Any) -> Any:
+    """Return the array that spills from a cell: the cell itself where the engine sees no array, for it is one cell."""
+    return cell if isinstance(spilled, dict) else spilled

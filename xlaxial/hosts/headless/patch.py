@@ -38,10 +38,11 @@ class _Sheet:
         self.cells: dict[tuple[int, int], tuple[int, int, tuple[int, int] | None]] = {}  # start, end, formula's span
         self.in_row: dict[int, list[tuple[int, int]]] = {}  # (column, offset) of the cells of touched rows
         self.rows: list[tuple[int, int, int]] = []  # number, start of its tag, offset of its end tag
-        self.end = -1  # offset of the end tag of sheetData
+        self.end = -1  # offset of the end tag of sheetData, of its only tag where it is empty
+        self.empty = False  # sheetData has one tag
         self.prefix = b""
         self._row = self._column = 0
-        self._start = self._formula = 0
+        self._start = self._formula = self._begun = 0
         self._span: tuple[int, int] | None = None
         self._depth_in_cell = 0
         scan(data, self._open, self._close)
@@ -61,20 +62,27 @@ class _Sheet:
             self._row = int(attributes["r"]) if attributes.get("r", "").isdecimal() else self._row + 1
             self._column, self._row_start = 0, at
         elif name == "sheetData":
-            tag = self.data[at + 1 : self.data.index(b"sheetData", at)]
-            self.prefix = tag
+            self._begun = at
+            self.prefix = self.data[at + 1 : self.data.index(b"sheetData", at)]
 
     def _close(self, name: str, at: int) -> None:
         if self._depth_in_cell:
             self._depth_in_cell -= 1
             if name == "f" and self._depth_in_cell == 1:
-                self._span = (self._formula, _after_tag(self.data, at))
+                self._span = (self._formula, self._end_of(self._formula, at))
             if self._depth_in_cell == 0 and (self._row, self._column) in self.touched:
-                self.cells[self._row, self._column] = (self._start, _after_tag(self.data, at), self._span)
+                self.cells[self._row, self._column] = (self._start, self._end_of(self._start, at), self._span)
         elif name == "row":
             self.rows.append((self._row, self._row_start, at))
         elif name == "sheetData":
-            self.end = at
+            tag_end = _after_tag(self.data, self._begun)
+            self.empty = self.data[tag_end - 2 : tag_end] == b"/>"
+            self.end = self._begun if self.empty else at
+
+    def _end_of(self, start: int, at: int) -> int:
+        """Offset behind an element: the end of an empty one is reported behind its only tag."""
+        tag_end = _after_tag(self.data, start)
+        return tag_end if self.data[tag_end - 2 : tag_end] == b"/>" else _after_tag(self.data, at)
 
 
 def _after_tag(data: bytes, at: int) -> int:
@@ -163,6 +171,14 @@ def patched(data: bytes, values: Values, areas: Mapping[tuple[int, int], str] | 
         for column, cell in sorted(made.items()):
             after = next((at for other, at in sheet.in_row.get(row, []) if other > column), end)
             edits.append((after, after, cell))
+    if sheet.empty and new_rows:
+        tag_end = _after_tag(data, sheet.end)
+        opening, rows = (
+            data[sheet.end : tag_end - 2].rstrip() + b">",
+            b"".join(new for _, new in sorted(new_rows.items())),
+        )
+        edits.append((sheet.end, tag_end, opening + rows + b"</" + p + b"sheetData>"))
+        new_rows.clear()
     for row, made_row in sorted(new_rows.items()):
         after = next((start for number, start, _ in sheet.rows if number > row), sheet.end)
         edits.append((after, after, made_row))

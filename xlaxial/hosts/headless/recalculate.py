@@ -12,12 +12,12 @@ from typing import Any
 from openpyxl.utils import get_column_letter
 
 from xlaxial.cells import CellError
-from xlaxial.hosts.headless.calls import Spills, engine_function, fit
+from xlaxial.hosts.headless.calls import Spills, anchored, engine_function, fit
 from xlaxial.hosts.headless.engine import Engine, Unevaluated, knows
 from xlaxial.hosts.headless.errors import CannotEvaluate, WorkbookError
 from xlaxial.hosts.headless.freezing import Readers, area_of
 from xlaxial.hosts.headless.prepass.copies import Copies
-from xlaxial.hosts.headless.prepass.rewrite import FIT, SPILL, Context, Rewritten
+from xlaxial.hosts.headless.prepass.rewrite import ANCHOR, FIT, SPILL, Context, Rewritten
 from xlaxial.hosts.headless.supplied import SUPPLIED
 from xlaxial.hosts.headless.workbook import LARGEST_ARRAY, Book, Formula, read_book
 
@@ -135,6 +135,7 @@ class _Run:
             if not knows(name):
                 self.engine.add_function(name, function)
         self.engine.add_function(FIT, fit)
+        self.engine.add_function(ANCHOR, anchored)
         self.spills = Spills()
         self.engine.add_function(SPILL, self.spills.note)
 

@@ -19,6 +19,7 @@ from xlaxial.hosts.headless.prepass.textformat import is_trusted
 
 FIT = "AX__FIT"  # internal function that fits an array to its cells
 SPILL = "AX__SPILL"  # internal function that notes the size of an array that spills by itself
+ANCHOR = "AX__ANCHOR"  # internal function that gives the array that spills from a cell
 _EXTERNAL = re.compile(r"^'?[^'!]*\[\d+\]|^\[\d+\]")
 _LONGEST = 8192
 _DEEPEST = 20  # names within names
@@ -31,7 +32,7 @@ _GIVES_ARRAY = frozenset(
     WRAPROWS XLOOKUP
     """.split()  # noqa: SIM905 - a list of quoted names reads worse
 )
-_HANDLED = frozenset(("SINGLE", "TEXT"))
+_HANDLED = frozenset(("ANCHORARRAY", "SINGLE", "TEXT"))
 _LOCAL = ("_xlpm.", "_xleta.")  # prefixes of names that LET and LAMBDA define
 
 
@@ -155,6 +156,8 @@ class _Rewriting:
         arguments = [*frame.arguments, inner]
         if frame.function == "SINGLE":
             return f"({inner})" if re.fullmatch(r"[^()]+", inner) else f"{FIT}({inner},1,1)"
+        if frame.function == "ANCHORARRAY":  # the engine takes an array of one cell for none
+            return f"{ANCHOR}({inner},ANCHORARRAY({inner}))"
         if frame.function == "TEXT":
             if len(arguments) != 2 or not is_trusted(arguments[1]):
                 raise CannotEvaluate(f"the format of TEXT is not evaluated here: {inner.strip()}"[:100])
