@@ -71,6 +71,6 @@ def test_the_function_wizard_tells_names_arguments_and_help(live: LiveOffice) ->
     assert len({entry["category"] for entry in seen.values()}) == 1
     for function in calc_functions.FUNCTIONS:
         entry = seen[function.name]
-        assert f"{function.summary} {function.returns} Example: {function.example}" == entry["text"]
+        assert f"{function.summary} Example: {function.example} {function.returns}" == entry["text"]
         told = [[argument.name, argument.help] for argument in function.arguments]
         assert told == [argument[:2] for argument in entry["arguments"]]

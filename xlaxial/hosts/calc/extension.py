@@ -119,8 +119,8 @@ def _idl_type(argument: Argument) -> str:
 
 
 def help_text(function: Function) -> str:
-    """Return what the function wizard says of a function: what it does, what comes back, an example."""
-    return f"{function.summary} {function.returns} Example: {function.example}".replace("  ", " ")
+    """Return what the function wizard says of a function; the end is cut off on the page where arguments are entered."""
+    return f"{function.summary} Example: {function.example} {function.returns}".rstrip()
 
 
 def _config(functions: Sequence[Function], source: Source, identifier: str) -> dict[str, object]:
