@@ -22,12 +22,18 @@ def _parser() -> argparse.ArgumentParser:
     parser.add_argument("--version", action="version", version=f"xlaxial {__version__}")
     commands = parser.add_subparsers(required=True, metavar="COMMAND")
 
-    recalc = commands.add_parser("recalc", help="recalculate a workbook and write it back, touching only what changed")
-    recalc.add_argument("book", type=Path)
+    recalc = commands.add_parser(
+        "recalc",
+        help="recalculate a workbook and write it back, touching only what changed",
+        epilog="exit 0: all recalculated; 2: could not run; 3: some cells keep their stored values",
+    )
+    recalc.add_argument("book", type=Path, metavar="BOOK")
     where = recalc.add_mutually_exclusive_group()
-    where.add_argument("--output", type=Path, help="where to write; BOOK.recalculated.xlsx where left out")
     where.add_argument(
-        "--in-place", action="store_true", help="write to the workbook itself; a backup is kept beside it"
+        "--output", type=Path, metavar="OUT", help="where to write; BOOK.recalculated.xlsx where left out"
+    )
+    where.add_argument(
+        "--in-place", action="store_true", help="write to the workbook itself; BOOK.backup.xlsx is kept beside it"
     )
     recalc.add_argument("--no-backup", action="store_true", help="with --in-place: keep no backup")
     recalc.set_defaults(run=_recalc)
@@ -39,12 +45,17 @@ def _parser() -> argparse.ArgumentParser:
     )
     verify.add_argument("books", type=Path, nargs="+", metavar="BOOK")
     verify.add_argument("--rtol", type=float, default=1e-9, help="relative difference that is still the same (1e-9)")
-    verify.add_argument("--report", type=Path, help="write a report: FILE.json, .xml (JUnit) or .html")
+    verify.add_argument("--report", type=Path, metavar="FILE", help="write a report: FILE.json, .xml (JUnit) or .html")
     verify.set_defaults(run=_verify)
 
     functions = commands.add_parser("functions", help="list the worksheet functions, or show one in full")
     functions.add_argument("name", nargs="?")
     functions.set_defaults(run=_functions)
+
+    calc = commands.add_parser("calc", help="the add-in of LibreOffice Calc: install, remove or check it")
+    calc.add_argument("action", choices=("install", "remove", "check"))
+    calc.add_argument("--profile", type=Path, help="folder of the office's user profile; the usual one where left out")
+    calc.set_defaults(run=_calc)
 
     demo = commands.add_parser("demo", help="write the demo schedule of quay tie rods")
     demo.add_argument("output", type=Path)
@@ -76,6 +87,13 @@ def _functions(options: argparse.Namespace) -> int:
         return 2
     print(page(options.name))
     return 0
+
+
+def _calc(options: argparse.Namespace) -> int:
+    from xlaxial.hosts.calc import commands
+
+    actions = {"install": commands.install, "remove": commands.remove, "check": commands.check}
+    return actions[options.action](options.profile)
 
 
 def _demo(options: argparse.Namespace) -> int:
