@@ -19,6 +19,7 @@ from xlaxial.solver.layout import Layout
 from xlaxial.solver.sparse import Sparse
 from xlaxial.solver.tridiagonal import Tridiagonal
 
+_WIDE = 1e10  # ratio of stiffnesses from which members are left out together with one of less that failed
 _NARROW = 40  # half bandwidth up to which banded factors are taken
 
 
@@ -81,7 +82,7 @@ class Assembly:
         spread = _spread(network, bar, support)
         while node >= 0:
             member = network.node_member[node]
-            failed |= spread >= spread[member]
+            failed |= spread >= max(spread[member], _WIDE)
             failed[member] = True
             node = self._factor(bar, support, failed)
         return failed
