@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 import sys
+from collections.abc import Iterator
+from contextlib import contextmanager
 from pathlib import Path
 
 from openpyxl.utils import get_column_letter
@@ -13,6 +15,10 @@ from xlaxial.hosts.headless.patch import write_values
 from xlaxial.hosts.headless.recalculate import DIFFERENT, FROZEN, NOT_STORED, Recalculation, recalculate
 from xlaxial.hosts.headless.report import lines, write_report
 
+LAST_DIGITS = 1e-14
+"""Relative difference below which recalc keeps a stored number: spreadsheets store 15 to 17 digits."""
+LISTED = 50
+"""Cells of a kind that are listed on a terminal; a report lists all."""
 HOLDS, DIFFERS, FAILED, UNSURE = 0, 1, 2, 3
 """Exit codes: all hold, some differ, could not run, what was recomputed holds but some cells could not be."""
 
@@ -43,24 +49,55 @@ def changed_areas(done: Recalculation) -> dict[str, dict[tuple[int, int], str]]:
     }
 
 
-def recalc(book: Path, output: Path | None, in_place: bool, keep_backup: bool = True) -> int:
-    """Recalculate a workbook and write it back; return the exit code."""
-    target = book if in_place else output or book.with_name(f"{book.stem}.recalculated{book.suffix}")
+@contextmanager
+def _working(on: str) -> Iterator[None]:
+    """Show on a terminal what is at work, and take it away again; nothing in a pipe."""
+    if not sys.stderr.isatty():
+        yield
+        return
+    print(f"{on} ...", end="", file=sys.stderr, flush=True)
     try:
-        done = recalculate(book, rtol=0.0, volatile=True)
+        yield
+    finally:
+        print("\r\x1b[K", end="", file=sys.stderr, flush=True)
+
+
+def recalc(book: Path, output: Path | None, in_place: bool, keep_backup: bool = True) -> int:
+    """Recalculate a workbook and write it back; return the exit code.
+
+    Without `output` and not `in_place` it is written beside the workbook, as NAME.recalculated.xlsx.
+    """
+    target = book if in_place else output or book.with_name(f"{book.stem}.recalculated{book.suffix}")
+    if not in_place and target.exists() and book.exists() and target.samefile(book):
+        print(f"{target.name}: is the workbook itself; use --in-place", file=sys.stderr)
+        return FAILED
+    try:
+        with _working(book.name):
+            done = recalculate(book, rtol=LAST_DIGITS, volatile=True)
         values = changed_values(done)
-        backup = book.with_name(f"{book.stem}.backup{book.suffix}") if in_place and keep_backup and values else None
-        if values or target != book:
+        backup = _free_name(book) if in_place and keep_backup else None
+        if values or not in_place:
             write_values(book, values, target, backup, changed_areas(done))
     except WorkbookError as wrong:
         print(wrong, file=sys.stderr)
         return FAILED
-    n_changed, n_frozen = sum(map(len, values.values())), done.count(FROZEN)
-    print(f"{book.name}: {len(done.results)} cells recalculated, {n_changed} changed, written to {target.name}")
-    for result in [r for r in done.results if r.state == FROZEN][:50]:
+    n_changed, frozen = sum(map(len, values.values())), [r for r in done.results if r.state == FROZEN]
+    where = f"written to {target.name}" if values or not in_place else "nothing to write"
+    print(f"{book.name}: {len(done.results) - len(frozen)} cells recalculated, {n_changed} changed, {where}")
+    for result in frozen[:LISTED]:
         print(f"  {result.sheet}!{result.cell}: not recalculated, {result.reason}")
+    if len(frozen) > LISTED:
+        print(f"  and {len(frozen) - LISTED} more not recalculated")
+    if frozen:
+        print("  These keep their stored values: recalculate them in a spreadsheet program.")
     print(CAUTION)
-    return UNSURE if n_frozen else HOLDS
+    return UNSURE if frozen else HOLDS
+
+
+def _free_name(book: Path) -> Path:
+    """Name for a backup that overwrites no earlier one."""
+    names = (book.with_name(f"{book.stem}.backup{n}{book.suffix}") for n in ("", *(f"-{i}" for i in range(2, 1000))))
+    return next(name for name in names if not name.exists())
 
 
 def verify(books: list[Path], rtol: float, report: Path | None) -> int:
@@ -68,17 +105,16 @@ def verify(books: list[Path], rtol: float, report: Path | None) -> int:
     done: list[Recalculation] = []
     failed: dict[str, str] = {}
     for number, book in enumerate(books, 1):
-        if sys.stderr.isatty() and len(books) > 1:
-            print(f"\r{number}/{len(books)} {book.name}", end="", file=sys.stderr)
         try:
-            found = recalculate(book, rtol=rtol)
+            with _working(f"{number}/{len(books)} {book.name}"):
+                found = recalculate(book, rtol=rtol)
         except WorkbookError as wrong:
             failed[book.name] = str(wrong)
             print(wrong, file=sys.stderr)
             continue
         done.append(found)
         print(f"{book.name}")
-        print("\n".join(lines(found)))
+        print("\n".join(lines(found, LISTED)))
     if report is not None:
         try:
             write_report(report, done, failed)

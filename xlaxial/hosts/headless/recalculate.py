@@ -24,7 +24,8 @@ from xlaxial.hosts.headless.workbook import LARGEST_ARRAY, Book, Formula, read_b
 SAME, DIFFERENT, NOT_STORED, FROZEN = "same", "different", "no stored value", "not recalculated"
 RTOL = 1e-9
 _LONG_NUMBER = re.compile(r"(?<![\w.])(?=[\d.]{17})\d{1,15}\.\d+(?![\d.])")
-_TINY = 1e-12  # numbers below this part of the sheet's largest are equal to zero
+_TINY = 1e-12  # what is left of a difference that is 0
+_NOISE = 1e-15  # numbers below this differ by rounding only
 
 
 @dataclass(frozen=True)
@@ -227,8 +228,6 @@ class _Run:
 def _compare(engine: Engine, book: Book, frozen: dict[tuple[str, int, int], str], rtol: float) -> list[Result]:
     out = []
     for sheet in book.sheets:
-        numbers = [abs(v) for v in sheet.stored.values() if isinstance(v, (int, float)) and not isinstance(v, bool)]
-        scale = max(numbers, default=1.0)
         text, spilled = {}, {}
         for formula in sheet.formulas:
             now = replace(formula, area=sheet.resized.get((formula.row, formula.column), formula.area))
@@ -243,7 +242,7 @@ def _compare(engine: Engine, book: Book, frozen: dict[tuple[str, int, int], str]
             new = fifteen_digits(engine.value(*place))
             if new is None and (row, column) in spilled:
                 new = 0.0
-            state = SAME if equal(stored, new, rtol, scale) else DIFFERENT
+            state = SAME if equal(stored, new, rtol) else DIFFERENT
             if stored is None and new not in ("", None) and (row, column) in text:
                 state = NOT_STORED
             out.append(Result(*place, source, stored, new, state))
@@ -257,14 +256,17 @@ def fifteen_digits(value: Any) -> Any:
     return _LONG_NUMBER.sub(lambda found: f"{float(found[0]):.15g}", value)
 
 
-def equal(stored: Any, new: Any, rtol: float, scale: float) -> bool:
-    """Whether a stored and a new value are the same; `scale` is the sheet's largest number."""
+def equal(stored: Any, new: Any, rtol: float) -> bool:
+    """Whether a stored and a new value are the same.
+
+    Numbers within `rtol` of each other; both below 1e-15; or one of them 0, as spreadsheets show what is left of a
+    difference, and the other below 1e-12. A blank and an empty text; texts, booleans and error values exactly.
+    """
+    if stored in (None, "") or new in (None, ""):
+        return stored in (None, "") and new in (None, "")
     if isinstance(stored, bool) or isinstance(new, bool):
         return stored is new
     if isinstance(stored, (int, float)) and isinstance(new, (int, float)):
-        return math.isclose(stored, new, rel_tol=rtol, abs_tol=_TINY * min(scale, 1.0))
-    if stored in (None, "") or new in (None, ""):
-        return stored in (None, "") and new in (None, "")
-    if isinstance(stored, CellError) or isinstance(new, CellError):
-        return bool(stored == new)
+        tiny = _TINY if 0.0 in (stored, new) else _NOISE
+        return math.isclose(stored, new, rel_tol=rtol, abs_tol=tiny)
     return bool(stored == new)
