@@ -53,7 +53,7 @@ def test_a_support_inside_parts_the_runs(network, actions):
 def test_a_tie_in_its_tube_turns_the_sense(network, actions):
     # tube 0-1 and tie 2-1 meet with their ends at node 1: tension of the tie is compression of the tube
     net = network([(0, 1), (2, 1)], [(0, np.inf), (2, np.inf)], area=[5.0, 1.0])
-    locked, state = locked_forces(network, actions, net, [0.0, 9.0])
+    _, state = locked_forces(network, actions, net, [0.0, 9.0])
     assert state.force_start[:, 0] == pytest.approx([-9.0, 9.0], rel=EXACT)
     np.testing.assert_array_equal(runs(net).sense[0] * runs(net).sense[1], -1.0)
     assert not locked_forces(network, actions, net, [-9.0, 9.0])[0].unlike.size

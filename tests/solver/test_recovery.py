@@ -15,8 +15,7 @@ FINE = 4001  # places of the scan
 def scanned(net, act, state, bar, case):
     x = np.linspace(0.0, net.bars.length[bar], FINE)
     x[-1] = net.bars.length[bar]
-    found = at_stations(net, act, state, np.zeros_like(act.imposed), np.full(FINE, bar), x, case)
-    return x, found
+    return at_stations(net, act, state, np.zeros_like(act.imposed), np.full(FINE, bar), x, case)
 
 
 @pytest.mark.parametrize("seed", range(12))
@@ -44,7 +43,7 @@ def test_extremes_are_those_of_a_scan(network, actions, seed):
     results = recover(net, act, state)
     for bar in range(n):
         for case in range(2):
-            x, found = scanned(net, act, state, bar, case)
+            found = scanned(net, act, state, bar, case)
             for name, values in (("stress", found.stress), ("displacement", found.displacement)):
                 size = np.ptp(values) + 1e-12
                 most, least = (getattr(results, f"{name}_{which}")[bar, case] for which in ("max", "min"))
