@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import dataclasses
 import json
 import subprocess
 import sys
@@ -144,6 +145,29 @@ def test_verify_could_not_run(filled: Path, tmp_path: Path, capsys: pytest.Captu
         "none.xlsx: cannot be read (No such file or directory)",
     ]
     assert "ties.xlsx\nTies: 3 same\n2 of the workbooks could not be run." in out.out
+
+
+def test_a_fault_of_the_program_is_never_written(
+    filled: Path, capsys: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    from xlaxial.functions import registry
+    from xlaxial.functions.call import caller
+
+    before = filled.read_bytes()
+    broken = dataclasses.replace(registry.load()["AX_REACTIONS"], code="xlaxial.nowhere:none")
+    monkeypatch.setitem(registry.load(), "AX_REACTIONS", broken)
+    caller.cache_clear()
+    try:
+        assert main(["recalc", str(filled), "--in-place"]) == 2
+        assert main(["verify", str(filled)]) == 2
+    finally:
+        caller.cache_clear()
+    out = capsys.readouterr()
+    fault = (
+        "ties.xlsx: a fault of xlaxial, please report it: AX_REACTIONS failed on its arguments (ModuleNotFoundError: "
+    )
+    assert [line[: len(fault)] for line in out.err.splitlines()] == [fault, fault]
+    assert filled.read_bytes() == before
 
 
 @pytest.fixture

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import logging
 import sys
 from collections.abc import Iterator
 from contextlib import contextmanager
@@ -62,6 +63,37 @@ def _working(on: str) -> Iterator[None]:
         print("\r\x1b[K", end="", file=sys.stderr, flush=True)
 
 
+class _Faults(logging.Handler):
+    """Collects the faults of our own functions, which show as #VALUE! in their cells: one line for each kind."""
+
+    def __init__(self) -> None:
+        super().__init__()
+        self.lines: list[str] = []
+
+    def emit(self, record: logging.LogRecord) -> None:
+        """Take one fault."""
+        kind = record.exc_info[0] if record.exc_info else None
+        line = record.getMessage() + (f" ({kind.__name__}: {record.exc_info[1]})" if kind and record.exc_info else "")
+        if line not in self.lines:
+            self.lines.append(line)
+
+
+def _recalculated(book: Path, shown: str, rtol: float, *, volatile: bool = False) -> Recalculation:
+    """Recalculate a workbook; a fault of the program is no result, so it is raised as a WorkbookError."""
+    log, faults = logging.getLogger("xlaxial"), _Faults()
+    propagate, log.propagate = log.propagate, False
+    log.addHandler(faults)
+    try:
+        with _working(shown):
+            done = recalculate(book, rtol=rtol, volatile=volatile)
+    finally:
+        log.removeHandler(faults)
+        log.propagate = propagate
+    if faults.lines:
+        raise WorkbookError(f"{book.name}: a fault of xlaxial, please report it: {'; '.join(faults.lines)}"[:500])
+    return done
+
+
 def recalc(book: Path, output: Path | None, in_place: bool, keep_backup: bool = True) -> int:
     """Recalculate a workbook and write it back; return the exit code.
 
@@ -72,8 +104,7 @@ def recalc(book: Path, output: Path | None, in_place: bool, keep_backup: bool = 
         print(f"{target.name}: is the workbook itself; use --in-place", file=sys.stderr)
         return FAILED
     try:
-        with _working(book.name):
-            done = recalculate(book, rtol=LAST_DIGITS, volatile=True)
+        done = _recalculated(book, book.name, LAST_DIGITS, volatile=True)
         values = changed_values(done)
         backup = _free_name(book) if in_place and keep_backup else None
         if values or not in_place:
@@ -106,8 +137,7 @@ def verify(books: list[Path], rtol: float, report: Path | None) -> int:
     failed: dict[str, str] = {}
     for number, book in enumerate(books, 1):
         try:
-            with _working(f"{number}/{len(books)} {book.name}"):
-                found = recalculate(book, rtol=rtol)
+            found = _recalculated(book, f"{number}/{len(books)} {book.name}", rtol)
         except WorkbookError as wrong:
             failed[book.name] = str(wrong)
             print(wrong, file=sys.stderr)
