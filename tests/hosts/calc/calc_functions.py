@@ -9,7 +9,7 @@ from xlaxial.cells import CellError, CellRange
 from xlaxial.functions.registry import Argument, Function
 
 _TABLE = Argument("table", "Table with its heading row: Length (mm), Area (mm2).", "table")
-_SECOND = Argument("second", "A second table, which may be left out.", "table", optional=True)
+_SECOND = Argument("second", "A second table, which may be empty.", "table", optional=True)
 _WANTED = Argument("wanted", 'Headings of the answer, one heading as text, or "Problems".', "cells", optional=True)
 _MARK = Argument("mark", "Mark of the member.", "value", optional=True)
 
@@ -23,7 +23,7 @@ def _declared(name: str, arguments: tuple[Argument, ...], shape: str = "grid") -
 FUNCTIONS = (
     _declared("AX_ECHO", (_TABLE, _SECOND, _WANTED, _MARK), "cell"),
     _declared("AX_GRID", (_TABLE, _WANTED)),
-    _declared("AX_ROWS", (_TABLE, _SECOND, _WANTED)),
+    _declared("AX_ROWS", (_TABLE, _WANTED)),
     _declared("AX_FAULT", (_MARK,), "cell"),
     _declared("AX_FAULTS", (_TABLE,)),
     _declared("AX_HELLO", (), "cell"),
@@ -49,7 +49,7 @@ def _grid(table: Any, wanted: Any) -> list[list[Any]]:
     ]
 
 
-def _rows(table: Any, second: Any, wanted: Any) -> list[list[Any]]:
+def _rows(table: Any, wanted: Any) -> list[list[Any]]:
     """One row per row below the heading: the sum of its numbers, or the row's first error, or #VALUE! for a text."""
     out: list[list[Any]] = []
     for row in table[1:]:

@@ -17,44 +17,53 @@ pytestmark = pytest.mark.office
 _TABLE = "Ties!r1c1 [['Mark', 'Length (mm)'], ['T1', 1200.0], ['T2', 'TBC']]"
 
 CALLS = {  # formula: what the function is told
-    "=AX_ECHO(Ties!A1:B3)": f"{_TABLE} | None | None | None",
-    "=AX_ECHO(Schedule)": f"{_TABLE} | None | None | None",  # a named range
-    "=AX_ECHO(TieTable[[#Headers],[#Data]])": f"{_TABLE} | None | None | None",  # a spreadsheet table
-    "=AX_ECHO(TieTable[[#Headers],[#Data],[Length (mm)]])": (
+    "=AX_ECHO(Ties!A1:B3,)": f"{_TABLE} | None | None | None",
+    "=AX_ECHO(Schedule,)": f"{_TABLE} | None | None | None",  # a named range
+    "=AX_ECHO(TieTable[[#Headers],[#Data]],)": f"{_TABLE} | None | None | None",  # a spreadsheet table
+    "=AX_ECHO(TieTable[[#Headers],[#Data],[Length (mm)]],)": (
         "Ties!r1c2 [['Length (mm)'], [1200.0], ['TBC']] | None | None | None"
     ),
     '=AX_ECHO(Ties!B2,,,"T1")': "Ties!r2c2 [[1200.0]] | None | None | 'T1'",  # one cell; arguments left out before one
     '=AX_ECHO(Ties!B2,,"Problems")': "Ties!r2c2 [[1200.0]] | None | 'Problems' | None",
-    "=AX_ECHO(Ties!B2,Ties!A1:B2)": ("Ties!r2c2 [[1200.0]] | [['Mark', 'Length (mm)'], ['T1', 1200.0]] | None | None"),
+    "=AX_ECHO(Ties!B2,Ties!A1:B2)": (
+        "Ties!r2c2 [[1200.0]] | Ties!r1c1 [['Mark', 'Length (mm)'], ['T1', 1200.0]] | None | None"
+    ),
     '=AX_ECHO(Ties!B2,,{"Force (kN)","Pass";"a",2})': (
         "Ties!r2c2 [[1200.0]] | None | [['Force (kN)', 'Pass'], ['a', 2.0]] | None"
     ),
     '=AX_ECHO(Ties!B2,,,AX_DATUM("twelve"))': "Ties!r2c2 [[1200.0]] | None | None | 12.0",
     "=AX_ECHO(Ties!B2,,AX_ROWS(Ties!A1:B2))": "Ties!r2c2 [[1200.0]] | None | [[1200.0]] | None",
-    "=AX_ECHO(Ties!D1:E2)": "Ties!r1c4 [[None, None], [None, None]] | None | None | None",  # blanks
-    "=AX_ECHO(Ties!B2,Ties!D1:E2,Ties!D1)": "Ties!r2c2 [[1200.0]] | [[None, None], [None, None]] | None | None",
-    "=AX_ECHO('Odd cells'!A1:A9)": (
+    "=AX_ECHO(Ties!D1:E2,)": "Ties!r1c4 [[None, None], [None, None]] | None | None | None",  # blanks
+    "=AX_ECHO(Ties!B2,Ties!D1:E2,Ties!D1)": "Ties!r2c2 [[1200.0]] | Ties!r1c4 [[None, None], [None, None]] | None | None",
+    "=AX_ECHO('Odd cells'!A1:A9,)": (
         "Odd cells!r1c1 [[CellError('#N/A')], [CellError('#DIV/0!')], [CellError('#VALUE!')], [CellError('#REF!')], "
         "[CellError('#NAME?')], [CellError('#VALUE!')], [CellError('#NULL!')], [CellError('#N/A')], "
         "[CellError('#DIV/0!')]] | None | None | None"
     ),
-    "=AX_ECHO('Odd cells'!B1:B9)": (
+    "=AX_ECHO('Odd cells'!B1:B9,)": (
         "Odd cells!r1c2 [[True], [False], [True], [datetime.datetime(2024, 3, 4, 0, 0)], "
         "[datetime.datetime(2024, 3, 4, 0, 0)], [45355.0], [datetime.time(3, 4)], [0.5], [None]] | None | None | None"
     ),
-    "=AX_ECHO(Ties!A:B)": f"{_TABLE} | None | None | None",  # whole columns
-    "=AX_ECHO(Ties!B2:B1048576)": "Ties!r2c2 [[1200.0], ['TBC']] | None | None | None",
-    "=AX_ECHO(Ties!1:1)": "Ties!r1c1 [['Mark', 'Length (mm)']] | None | None | None",
-    "=AX_ECHO(Ties!Z:Z)": "Ties!r1c26 [[None]] | None | None | None",  # a whole column without a value
+    "=AX_ECHO(Ties!A:B,)": f"{_TABLE} | None | None | None",  # whole columns
+    "=AX_ECHO(Ties!B2:B1048576,)": "Ties!r2c2 [[1200.0], ['TBC']] | None | None | None",
+    "=AX_ECHO(Ties!1:1,)": "Ties!r1c1 [['Mark', 'Length (mm)']] | None | None | None",
+    "=AX_ECHO(Ties!Z:Z,)": "Ties!r1c26 [[None]] | None | None | None",  # a whole column without a value
     "=AX_ECHO(Ties!B2,Ties!A:B)": (
-        "Ties!r2c2 [[1200.0]] | [['Mark', 'Length (mm)'], ['T1', 1200.0], ['T2', 'TBC']] | None | None"
+        "Ties!r2c2 [[1200.0]] | Ties!r1c1 [['Mark', 'Length (mm)'], ['T1', 1200.0], ['T2', 'TBC']] | None | None"
     ),
     "=AX_ECHO(Ties!B2,,Ties!1:1)": "Ties!r2c2 [[1200.0]] | None | [['Mark', 'Length (mm)']] | None",
-    "=ax_echo(Ties!B2)": "Ties!r2c2 [[1200.0]] | None | None | None",
-    "=AX_ECHO(OFFSET(Ties!A1,1,1,1,1))": "Ties!r2c2 [[1200.0]] | None | None | None",
+    "=ax_echo(Ties!B2,)": "Ties!r2c2 [[1200.0]] | None | None | None",
+    "=AX_ECHO(OFFSET(Ties!A1,1,1,1,1),)": "Ties!r2c2 [[1200.0]] | None | None | None",
+    "=AX_ECHO(Ties!B2,'Odd cells'!A1:A2)": (
+        "Ties!r2c2 [[1200.0]] | Odd cells!r1c1 [[CellError('#N/A')], [CellError('#DIV/0!')]] | None | None"
+    ),
+    "=AX_ECHO(Ties!B2,,Ties!A:B)": (
+        "Ties!r2c2 [[1200.0]] | None | [['Mark', 'Length (mm)'], ['T1', 1200.0], ['T2', 'TBC']] | None"
+    ),
     # refused by the program before the function is called: an error value, never a wrong number
-    "=AX_ECHO({1,2;3,4})": "#VALUE!",
-    "=AX_ECHO(Ties!B2,'Odd cells'!A1:A2)": "#VALUE!",
+    "=AX_ECHO({1,2;3,4},)": "#VALUE!",
+    "=AX_ECHO(Ties!B2,,'Odd cells'!A1:A2)": "#VALUE!",  # an error cell in an argument that comes by its value
+    "=AX_ECHO(Ties!B2)": "#VALUE!",  # a table at the end may be empty, but its separator must stand
     "=AX_ECHO()": "#VALUE!",
 }
 
@@ -98,7 +107,7 @@ def test_dates_follow_the_workbook_s_own_calendar(
     sheet = book.active
     assert sheet is not None
     sheet["A1"] = dt.datetime(2024, 3, 4)
-    sheet["B1"] = "=AX_ECHO(A1)"
+    sheet["B1"] = "=AX_ECHO(A1,)"
     saved = openpyxl.load_workbook(calculate(save(book, "calendar.xlsx")), data_only=True)
     told = saved["Sheet"]["B1"].value
     assert told == "Sheet!r1c1 [[datetime.datetime(2024, 3, 4, 0, 0)]] | None | None | None"

@@ -5,6 +5,7 @@ from __future__ import annotations
 import json
 import re
 import zipfile
+from dataclasses import replace
 from pathlib import Path
 from xml.etree import ElementTree as ET
 
@@ -12,13 +13,13 @@ import calc_functions
 
 from xlaxial import __version__
 from xlaxial.functions.registry import load
-from xlaxial.hosts.calc.extension import Source, idl, pack, programmatic, write_extension
+from xlaxial.hosts.calc.extension import Source, idl, kinds, pack, programmatic, write_extension
 
 _IDL = """\
 module org { module xlaxial { module calc {
 interface XFunctions : com::sun::star::uno::XInterface {
   any axEcho( [in] com::sun::star::beans::XPropertySet document, [in] com::sun::star::table::XCellRange argument1, \
-[in] any argument2, [in] any argument3, [in] any argument4 );
+[in] com::sun::star::table::XCellRange argument2, [in] any argument3, [in] any argument4 );
   sequence< sequence< any > > axGrid( [in] com::sun::star::beans::XPropertySet document, \
 [in] com::sun::star::table::XCellRange argument1, [in] any argument2 );
 };
@@ -28,6 +29,14 @@ interface XFunctions : com::sun::star::uno::XInterface {
 
 def test_tables_are_ranges_and_what_may_be_left_out_is_of_any_type() -> None:
     assert idl(calc_functions.FUNCTIONS[:2]) == _IDL
+
+
+def test_a_table_behind_an_optional_argument_of_another_kind_comes_by_its_value() -> None:
+    """It stands where formulas often end, so that it must be possible to leave it off."""
+    table, second, wanted, mark = calc_functions.FUNCTIONS[0].arguments
+    assert kinds(replace(calc_functions.FUNCTIONS[0], arguments=(table, wanted, second))) == ("range", "cells", "table")
+    required = replace(mark, optional=False)
+    assert kinds(replace(calc_functions.FUNCTIONS[0], arguments=(required, second))) == ("value", "range")
 
 
 def test_every_registered_function_is_declared_once() -> None:
@@ -50,8 +59,8 @@ def test_the_files_name_each_other(tmp_path: Path) -> None:
     config = json.loads((folder / "config.json").read_text(encoding="utf-8"))
     assert config["folders"] == ["/a b/é"]
     assert config["functions"]["axEcho"]["name"] == "AX_ECHO"
-    kinds = [argument["kind"] for argument in config["functions"]["axEcho"]["arguments"]]
-    assert kinds == ["range", "table", "cells", "value"]
+    told = [argument["kind"] for argument in config["functions"]["axEcho"]["arguments"]]
+    assert told == ["range", "range", "cells", "value"]
 
 
 def test_the_packed_file_holds_the_folder(tmp_path: Path) -> None:

@@ -8,6 +8,8 @@ import calc_functions
 import pytest
 from calc_live import LiveOffice
 
+from xlaxial.hosts.calc.extension import argument_help, kinds
+
 pytestmark = pytest.mark.office
 
 _TABLE: list[list[Any]] = [
@@ -58,7 +60,7 @@ def test_cells_as_typed_reach_the_function(live: LiveOffice) -> None:
         ["type", "A3", "=A1"],
         ["type", "A4", "12%"],
         ["type", "A5", "'007"],
-        ["formula", "Sheet1", "C1", "=AX_ECHO(A1:A6)"],
+        ["formula", "Sheet1", "C1", "=AX_ECHO(A1:A6;)"],
     ]
     told = live.steps(*typed, ["read", "Sheet1", "C1"])[-1][0][0]
     moment = "datetime.datetime(2024, 3, 4, 0, 0)"
@@ -72,5 +74,8 @@ def test_the_function_wizard_tells_names_arguments_and_help(live: LiveOffice) ->
     for function in calc_functions.FUNCTIONS:
         entry = seen[function.name]
         assert f"{function.summary} Example: {function.example} {function.returns}" == entry["text"]
-        told = [[argument.name, argument.help] for argument in function.arguments]
+        told = [
+            [argument.name, argument_help(argument, kind)]
+            for argument, kind in zip(function.arguments, kinds(function), strict=True)
+        ]
         assert told == [argument[:2] for argument in entry["arguments"]]

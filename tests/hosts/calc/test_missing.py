@@ -27,14 +27,14 @@ def answers(office: Office, tmp_path_factory: pytest.TempPathFactory) -> Answers
     for row in (["Mark", "Length (mm)"], ["T1", 1200], ["T2", 800]):
         sheet.append(row)
     sheet["D1"], sheet["E1"] = "Utilisation", "Status"
-    sheet["D2"] = ArrayFormula("D2:E3", "=AX_ROWS(A1:B3,,D1:E1)")
+    sheet["D2"] = ArrayFormula("D2:E3", "=AX_ROWS(A1:B3,D1:E1)")
     sheet["F2"] = "=MAX(D2:D3)"
     sheet["G1"] = ArrayFormula("G1:H3", "=AX_ROWS(A1:B3)")
     sheet["I1"] = "=MAX(G2:H3)"
-    sheet["J1"] = ArrayFormula("J1:L2", '=AX_ROWS(A1:B3,,"Problems")')
+    sheet["J1"] = ArrayFormula("J1:L2", '=AX_ROWS(A1:B3,"Problems")')
     sheet["M1"] = "=AX_HELLO()"
     sheet["N1"] = '=AX_DATUM("twelve")'
-    sheet["O1"] = '=AX_ROWS(A1:B2,,"kN")'
+    sheet["O1"] = '=AX_ROWS(A1:B2,"kN")'
     book.save(folder / "book.xlsx")
 
     def of(source: Source) -> Any:

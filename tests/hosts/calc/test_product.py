@@ -12,6 +12,7 @@ import pytest
 from calc_live import LiveOffice
 
 from xlaxial.functions.registry import load
+from xlaxial.hosts.calc.extension import argument_help, kinds
 
 pytestmark = pytest.mark.office
 
@@ -114,6 +115,27 @@ def test_a_wrong_member_fails_alone_and_no_summary_passes_over_it(product: LiveO
     assert summary[1][0] == pytest.approx(-22.860009, abs=5e-7)
 
 
+@pytest.mark.parametrize("wrong", ["=NA()", "=DATE(2026;4;3)"])
+def test_a_wrong_load_fails_its_member_alone(product: LiveOffice, wrong: str) -> None:
+    """An error cell in the loads, and a force typed as 3/4 that the program has made a date."""
+    loads = [["Mark", "Node", "Force (kN)"], ["S1", 1, 0], ["S2", 1, 5]]
+    second = [["S2", 540, 1100, 70, 23, 30], ["S2", 400, 640, 205, 12, 30]]
+    seen = product.steps(
+        *_fill("A", 1, [*_SEGMENTS, *second]),
+        *_fill("H", 1, [*_SUPPORTS, *_SECOND_SUPPORTS]),
+        *_fill("S", 1, loads),
+        ["formula", _SHEET, "U3", wrong],
+        _set("K1", "Force (kN)"),
+        _set("L1", "Status"),
+        ["array", _SHEET, "K2:L6", "=AX_SEGMENTS(A1:F6;H1:J5;S1:U3;K1:L1)"],
+        _read("K2:L6"),
+    )
+    block = seen[-1]
+    assert [row[0] for row in block[:3]] == pytest.approx([-22.860009] * 3, abs=5e-7)
+    assert [row[0] for row in block[3:]] == [["error", 519]] * 2
+    assert all(f"{_SHEET}!U3" in row[1] for row in block[3:])
+
+
 def test_one_call_a_row_gives_what_the_block_gives(product: LiveOffice) -> None:
     row = ["formula", _SHEET, "R2", '=AX_FORCES($A2:$F2;$H$1:$J$3;;"kN";;;$A$1:$F$1)']
     one = [["S1", 540, 1100, 70, 23, 30]]
@@ -132,5 +154,8 @@ def test_every_function_is_in_the_wizard_with_its_help(product: LiveOffice) -> N
     for name, function in load().items():
         assert seen[name]["text"].startswith(function.summary)
         assert function.example in seen[name]["text"]
-        told = [[argument.name, argument.help] for argument in function.arguments]
+        told = [
+            [argument.name, argument_help(argument, kind)]
+            for argument, kind in zip(function.arguments, kinds(function), strict=True)
+        ]
         assert [argument[:2] for argument in seen[name]["arguments"]] == told

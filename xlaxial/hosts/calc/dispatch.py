@@ -46,7 +46,7 @@ def dispatcher(config: Mapping[str, Any]) -> Run:
 
 def _argument(kind: str, value: Any, document: Any) -> Any:
     if kind == "range":
-        return read_range(value, document)
+        return None if value is None else read_range(value, document)
     if kind != "value" and type(value) is float and value == 0.0:
         return None  # a single blank cell arrives as 0, which is no heading and no table
     return cells_in(value)

@@ -96,8 +96,8 @@ def programmatic(name: str) -> str:
 def idl(functions: Sequence[Function], identifier: str = IDENTIFIER) -> str:
     """Return the interface of the functions in UNO's interface language.
 
-    A table is declared as a range of cells: the function is then called in spite of error cells, and knows where the
-    range stands. Every other argument is of any type, because only such a one may be left out at the end.
+    A table is declared as a range of cells (see `kinds`): the function is then called in spite of error cells, and
+    knows where the range stands. Every other argument is of any type, because only such a one may be left off the end.
     """
     modules = identifier.split(".")
     lines = [
@@ -107,20 +107,39 @@ def idl(functions: Sequence[Function], identifier: str = IDENTIFIER) -> str:
     for function in functions:
         result = "any" if function.shape == "cell" else "sequence< sequence< any > >"
         arguments = ["[in] com::sun::star::beans::XPropertySet document"]
-        arguments += [f"[in] {_idl_type(argument)} argument{n}" for n, argument in enumerate(function.arguments, 1)]
+        types = ["com::sun::star::table::XCellRange" if kind == "range" else "any" for kind in kinds(function)]
+        arguments += [f"[in] {kind} argument{n}" for n, kind in enumerate(types, 1)]
         lines.append(f"  {result} {programmatic(function.name)}( {', '.join(arguments)} );")
     return "\n".join([*lines, "};", "}; " * len(modules)]).rstrip() + "\n"
 
 
-def _idl_type(argument: Argument) -> str:
-    if argument.kind == "table" and not argument.optional:
-        return "com::sun::star::table::XCellRange"
-    return "any"
+def kinds(function: Function) -> tuple[str, ...]:
+    """Return how each argument of a function reaches it: "range" (a place in a sheet), or its own kind (by value).
+
+    A table is a range where everything before it is required or a table too. Such an optional table may be left empty,
+    but its separator has to stand: ``=AX_REACTIONS(A1:F4, H1:J3, )``. In return an error cell in it fails its member
+    only, and a number that became a date is recognised. By value Calc would refuse the whole call for an error cell,
+    and hand a date over as a plain number.
+    """
+    found: list[str] = []
+    for argument in function.arguments:
+        leading = all(
+            kind == "range" or not before.optional for kind, before in zip(found, function.arguments, strict=False)
+        )
+        found.append("range" if argument.kind == "table" and leading else argument.kind)
+    return tuple(found)
 
 
 def help_text(function: Function) -> str:
     """Return what the function wizard says of a function; the end is cut off on the page where arguments are entered."""
     return f"{function.summary} Example: {function.example} {function.returns}".rstrip()
+
+
+def argument_help(argument: Argument, kind: str) -> str:
+    """Return what the function wizard says of an argument."""
+    if argument.optional and kind == "range":
+        return f"{argument.help} May be empty, but its separator must stand."
+    return argument.help
 
 
 def _config(functions: Sequence[Function], source: Source, identifier: str) -> dict[str, object]:
@@ -141,17 +160,13 @@ def _config(functions: Sequence[Function], source: Source, identifier: str) -> d
                 "help": help_text(function),
                 "shape": function.shape,
                 "arguments": [
-                    {"name": argument.name, "help": argument.help, "kind": _kind(argument)}
-                    for argument in function.arguments
+                    {"name": argument.name, "help": argument_help(argument, kind), "kind": kind}
+                    for argument, kind in zip(function.arguments, kinds(function), strict=True)
                 ],
             }
             for function in functions
         },
     }
-
-
-def _kind(argument: Argument) -> str:
-    return "range" if argument.kind == "table" and not argument.optional else argument.kind
 
 
 def _manifest() -> ET.Element:
