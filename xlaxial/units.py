@@ -297,7 +297,7 @@ _BRACKETS = re.compile(r"^(.*?)\s*(?:\((.*)\)|\[(.*)\])\s*$", re.DOTALL)
 def heading_forms(text: str) -> tuple[tuple[str, str | None], ...]:
     """Return the ways to split a heading into a term and its unit's text, in the order in which to try them."""
     text = " ".join(text.replace("\u00a0", " ").split())
-    forms: list[tuple[str, str | None]] = [(text, None)]
+    forms: list[tuple[str, str | None]] = []
     for opening in ("(", "["):
         at = text.find(opening)
         if at > 0 and text.endswith(")" if opening == "(" else "]"):
@@ -306,15 +306,18 @@ def heading_forms(text: str) -> tuple[tuple[str, str | None], ...]:
     if found and found[1]:
         last = max(text.rfind("("), text.rfind("["))
         forms.append((text[:last].rstrip(" ,/"), text[last + 1 : -1].strip()))
+    whole: tuple[str, str | None] = (text, None)
+    if not text.endswith("-"):  # a bare dash is the unit of a number without dimension
+        forms.append(whole)
     for mark in (",", "/"):
         for at in dict.fromkeys((text.rfind(mark), text.find(mark))):
             if 0 < at < len(text) - 1:
                 forms.append((text[:at].strip(), strip_brackets(text[at + 1 :])))
-    return tuple(dict.fromkeys(forms))
+    return tuple(dict.fromkeys([*forms, whole]))
 
 
 @lru_cache(maxsize=16384)
 def normal(text: str) -> str:
     """Return a term in the form in which terms are compared: case, spaces and punctuation do not matter."""
     text = unicodedata.normalize("NFKC", text).replace("\u2206", "Δ").replace("ϵ", "ε").replace("∑", "Σ")
-    return "".join(ch for ch in text.casefold() if ch.isalnum() or ch == "ø")
+    return "".join(ch for ch in text.casefold() if ch.isalnum() or ch in "%‰")

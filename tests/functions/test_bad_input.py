@@ -85,6 +85,17 @@ def test_a_bad_segment_row_fails_alone(row: list[Any], cell: str, says: str, rem
     assert says in status[1]
 
 
+def test_every_word_is_an_error_where_no_member_can_be_solved() -> None:
+    from xlaxial.functions.registry import load
+
+    table = [HEADINGS, ["B", "TBC", 500, 200, 12, 0, None]]
+    for word in load()["AX_SEGMENTS"].words:
+        unit = {"force": " (kN)", "stress": " (MPa)", "length": " (mm)", "strain": " (-)"}.get(word.dimension, "")
+        answer = AX_SEGMENTS(table, [["Node"], [0]], None, word.name + unit)
+        assert answer == [[VALUE]] if word.name != "Status" else "not a number" in answer[0][0]
+    assert AX_MEMBERS(table, [["Node"], [0]], None, "Redundants") == [[VALUE]]
+
+
 def test_every_row_of_a_failing_member_fails_and_says_where() -> None:
     tables = (
         schedule(["B", 1000, 500, 200, 12, 5, None], ["B", "TBC", 500, 200, 12, 5, None]),

@@ -244,3 +244,20 @@ def test_the_same_tables_are_solved_once_and_an_edit_is_seen() -> None:
     assert AX_SEGMENTS(CellRange(edited, "S", 1, 1), ENDS, None, "kN")[0] != first[0]
     assert AX_SEGMENTS(CellRange(PLAIN, "S", 1, 1), ENDS, None, "kN") == first
     assert SOLVED.misses == 2
+
+
+def test_units_that_are_signs_alone_are_units() -> None:
+    """A percentage is never taken for a number without dimension, nor a dash for nothing."""
+    strains = {
+        "Imposed strain (%)": 0.05,
+        "Imposed strain, %": 0.05,
+        "Imposed strain [‰]": 0.5,
+        "Imposed strain (-)": 5e-4,
+    }
+    strains |= {"Imposed strain, -": 5e-4, "ε0 / %": 0.05, "Imposed strain (µε)": 500}
+    for heading, value in strains.items():
+        table = [["L (mm)", "A (mm2)", "E (GPa)", "Yield (MPa)", heading], [1000, 500, 200, 250, value]]
+        rows = AX_SEGMENTS(
+            table, [["Node"], [0], [1]], None, [["Stress (MPa)", "Utilisation (%)", "Utilisation", "Utilisation (-)"]]
+        )
+        assert rows == [[pytest.approx(-100), pytest.approx(40), pytest.approx(0.4), pytest.approx(0.4)]], heading

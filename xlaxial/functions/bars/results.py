@@ -22,7 +22,7 @@ class SegmentResults:
         self._made: dict[str, Floats] = {}
         pieces = solution.pieces
         self._first = pieces.first
-        self._last = np.append(pieces.first[1:], pieces.bars.start.size) - 1
+        self._last = np.append(pieces.first[1:], pieces.bars.start.size)[: pieces.first.size] - 1
         self._split = pieces.first.size != pieces.bars.start.size
         self._rows = solution.inputs.nodes.rows[pieces.kept_segments]
 
