@@ -18,7 +18,7 @@ pytestmark = pytest.mark.benchmark
 FASTER_THAN_LOOP = 30.0
 SLOWER_THAN_BANDED = 3.0
 MOST_MEMORY = 1e9  # bytes
-REPEATS = 9
+REPEATS = 15
 
 
 def best(call, repeats=REPEATS):

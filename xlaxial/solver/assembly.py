@@ -15,7 +15,7 @@ from xlaxial.arrays import Flags, Floats, Ints
 from xlaxial.model.network import Network
 from xlaxial.solver.banded import Banded
 from xlaxial.solver.holds import Holds
-from xlaxial.solver.layout import Layout
+from xlaxial.solver.layout import CHUNK, Layout
 from xlaxial.solver.sparse import Sparse
 from xlaxial.solver.tridiagonal import Tridiagonal
 
@@ -92,11 +92,14 @@ class Assembly:
         network, layout, n = self.network, self.layout, self.network.n_nodes
         self.holds = holds = Holds(network, support)  # by the stiffnesses that were factorised last
         self.links = layout.to_links(bar)
-        diagonal = np.empty(n)
+        diagonal, coupling = np.empty(n), np.empty(layout.n_links)
         if layout.chain:
-            diagonal[-1] = 0.0
-            diagonal[:-1] = self.links
-            diagonal[1:] += self.links
+            diagonal[0] = 0.0
+            for a in range(0, n - 1, CHUNK):
+                own = self.links[a : a + CHUNK]
+                diagonal[a + 1 : a + 1 + CHUNK] = own
+                diagonal[a : a + own.size] += own
+                np.negative(own, out=coupling[a : a + CHUNK])
         else:
             diagonal[:] = np.bincount(network.bars.start, weights=bar, minlength=n)
             diagonal += np.bincount(network.bars.end, weights=bar, minlength=n)
@@ -107,7 +110,6 @@ class Assembly:
             held = np.union1d(held, np.flatnonzero(left_out[network.node_member]))
         diagonal[held] = 1.0
         if layout.chain:
-            coupling = -self.links
             if held.size:
                 coupling[held[held < n - 1]] = 0.0
                 coupling[held[held > 0] - 1] = 0.0

@@ -140,15 +140,15 @@ def solve_equations(equations: Equations, assembly: Assembly | None = None) -> F
     bound = balance.measure(out, TRUSTED)
     poor = _poor(bound, TRUSTED)
     if not poor.any():
-        return _found(balance, u, None, bound)
+        return _found(balance, u, None, bound, out)
     if not np.isfinite(bound).all():
         finite = equations.finite()
         if finite is not None:
             return _put_together(equations, Found.empty(equations), finite)
     if 2 * np.count_nonzero(poor) < poor.size:
-        return _put_together(equations, _found(balance, u, None, bound), poor)
-    low, bound = _refine(balance, assembly, u, out)
-    found = _found(balance, u, low, bound)
+        return _put_together(equations, _found(balance, u, None, bound, out), poor)
+    low, bound, out = _refine(balance, assembly, u, out)
+    found = _found(balance, u, low, bound, out)
     poor = _poor(bound, _TOLERATED)
     return _alone(equations, found, poor) if poor.any() else found
 
@@ -175,8 +175,8 @@ def _first(equations: Equations, balance: Balance, solver: _Solver) -> tuple[Flo
     return u, balance.check(u)
 
 
-def _refine(balance: Balance, solver: _Solver, u: Floats, out: Floats) -> tuple[Floats | None, Floats]:
-    """Refine u in place; return what it lacks to a sum of two doubles, and the bound of the error of any force."""
+def _refine(balance: Balance, solver: _Solver, u: Floats, out: Floats) -> tuple[Floats | None, Floats, Floats]:
+    """Refine u in place; return what it lacks to a sum of two doubles, the bound of any force's error, and scratch."""
     low: Floats | None = None
     worst = np.inf
     for _ in range(_ROUNDS):
@@ -188,7 +188,7 @@ def _refine(balance: Balance, solver: _Solver, u: Floats, out: Floats) -> tuple[
         if now <= TRUSTED or not now < 0.25 * worst:
             break
         worst = now
-    return low, bound
+    return low, bound, out
 
 
 def _add(high: Floats, low: Floats | None, more: Floats) -> Floats:
@@ -232,19 +232,17 @@ def _alone(equations: Equations, found: Found, members: Flags) -> Found:
                 part, assembly.layout, assembly.layout.to_links(part.bar), Holds(own, own.supports.stiffness)
             )
             u, out = _first(part, balance, solver)
-            low, bound = _refine(balance, solver, u, out)
+            low, bound, out = _refine(balance, solver, u, out)
             if (bound <= _REFUSED).all():
-                result = _found(balance, u, low, bound)
+                result = _found(balance, u, low, bound, out)
         found.put(result, nodes, bars, supports, np.array([member]))
     return found
 
 
-def _found(balance: Balance, u: Floats, low: Floats | None, bound: Floats) -> Found:
+def _found(balance: Balance, u: Floats, low: Floats | None, bound: Floats, scratch: Floats) -> Found:
     """Results of a state that has been checked last."""
     layout = balance.layout
-    rise = layout.rise(u, low)
-    if low is not None:
-        u += low
+    rise = layout.rise(u, low, scratch)
     start = layout.to_bars(balance.start)
     end = start if balance.end is balance.start else layout.to_bars(balance.end)
     return Found(u, start, end, layout.to_bars(rise), balance.reaction, balance.overall(), bound)

@@ -15,6 +15,7 @@ import numpy as np
 
 from xlaxial.arrays import Flags, Floats, Ints
 from xlaxial.model.network import Bars
+from xlaxial.solver.layout import CHUNK
 
 _NEAR = 0.5  # |z| up to which the series is used; beyond, the closed forms lose less than their last digit but one
 _TERMS = 27  # 0.5 ** 54 is below the last digit
@@ -33,8 +34,11 @@ def flexibility(bars: Bars) -> Floats:
 def stiffness(bars: Bars) -> Floats:
     """Return the stiffness of each bar, 1/f, (n_bars,) N/m."""
     tapered = _tapered(bars, bars.area_end)
-    out = bars.modulus * bars.area_start
-    out /= bars.length
+    out = np.empty_like(bars.length)
+    for a in range(0, out.size, CHUNK):
+        part = slice(a, a + CHUNK)
+        np.multiply(bars.modulus[part], bars.area_start[part], out=out[part])
+        out[part] /= bars.length[part]
     if tapered.size:
         out[tapered] /= _means(bars.area_start[tapered], bars.area_end[tapered], bars.round_taper[tapered])[0]
     return out

@@ -54,15 +54,29 @@ class Layout:
         """Pick bar values from links, (..., n_links) to (..., n_bars)."""
         return values if not self.chain or self.single else values.take(self.start, axis=-1)
 
-    def rise(self, u: Floats, low: Floats | None) -> Floats:
-        """Differences of nodal values u + low along links, (n_cases, n_links)."""
-        left, right = self.ends(u)
-        out: Floats = right - left
-        if low is not None:
-            left, right = self.ends(low)
-            for row, w, e in zip(out, left, right, strict=True):
-                for a in range(0, row.size, CHUNK):
-                    row[a : a + CHUNK] += e[a : a + CHUNK] - w[a : a + CHUNK]
+    def rise(self, u: Floats, low: Floats | None, scratch: Floats) -> Floats:
+        """Differences of nodal values u + low along links, (n_cases, n_links).
+
+        Puts the sum in the place of u, and for chains the result in that of `scratch`, (n_cases, n_nodes).
+        """
+        if not self.chain:
+            left, right = self.ends(u)
+            rises: Floats = right - left
+            if low is not None:
+                left, right = self.ends(low)
+                rises += right - left
+                u += low
+            return rises
+        out = scratch[:, :-1]
+        if low is None:
+            return np.subtract(u[:, 1:], u[:, :-1], out=out)
+        for row, high, rest in zip(out, u, low, strict=True):
+            for a in range(0, row.size, CHUNK):
+                b = min(a + CHUNK, row.size)
+                np.subtract(high[a + 1 : b + 1], high[a:b], out=row[a:b])
+                row[a:b] += rest[a + 1 : b + 1] - rest[a:b]
+                high[a:b] += rest[a:b]
+            high[-1] += rest[-1]
         return out
 
     def ends(self, u: Floats) -> tuple[Floats, Floats]:
