@@ -20,8 +20,9 @@ from xlaxial.hosts.headless.prepass.textformat import is_trusted
 FIT = "AX__FIT"  # internal function that fits an array to its cells
 SPILL = "AX__SPILL"  # internal function that notes the size of an array that spills by itself
 ANCHOR = "AX__ANCHOR"  # internal function that gives the array that spills from a cell
-_EXTERNAL = re.compile(r"^'?[^'!]*\[\d+\]|^\[\d+\]")
+_EXTERNAL = re.compile(r"^(?:'?[^'!\[]*\[[^\]]+\][^!\]]*|\['[^']*'\][^!]*)!")
 _LONGEST = 8192
+_SEARCH_MODE = 5  # place of that argument of XLOOKUP, from 0
 _DEEPEST = 20  # names within names
 _VOLATILE = frozenset(("NOW", "TODAY", "RAND", "RANDBETWEEN", "RANDARRAY"))
 _REACHING = frozenset(("INDIRECT", "OFFSET"))
@@ -152,6 +153,8 @@ class _Rewriting:
         """Text of a finished call or bracket; where it is not handled its opening has been put in."""
         inner = "".join(frame.pieces)
         if not frame.handled:
+            if frame.function == "XLOOKUP" and frame.argument >= _SEARCH_MODE:
+                self.made.doubtful = "XLOOKUP finds less here with a search mode"
             return inner + ")"
         arguments = [*frame.arguments, inner]
         if frame.function == "SINGLE":
