@@ -67,8 +67,15 @@ class Network:
                 return False
         if self.n_members == 1:
             return True
-        first = np.append(0, np.flatnonzero(self.node_member[1:] != self.node_member[:-1]) + 1)
+        first = self.first_nodes
         return first.size == self.n_members and bool((self.node_member[first] == np.arange(first.size)).all())
+
+    @cached_property
+    def first_nodes(self) -> Ints:
+        """First node of each member, (n_members,), where members stand one after the other."""
+        if self.n_members == 1:
+            return np.zeros(1, dtype=np.int64)
+        return np.append(0, np.flatnonzero(self.node_member[1:] != self.node_member[:-1]) + 1)
 
 
 @dataclass(frozen=True)

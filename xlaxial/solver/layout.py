@@ -10,6 +10,7 @@ import numpy as np
 from xlaxial.arrays import Floats, Ints
 from xlaxial.model.network import Network
 
+_FEW = 24  # nodes of members of equal length up to which their values are folded place by place
 CHUNK = 16384  # entries that are worked on at a time where much is done to each
 
 
@@ -33,9 +34,12 @@ class Layout:
         n_bars = bars.start.size
         self.chain = network.in_chains
         self.single = self.chain and self.n_members == 1
-        self.first = np.zeros(1, dtype=np.int64)  # (n_members,) first node of each, where `chain`
-        if self.n_members > 1 and self.chain:
-            self.first = np.append(0, np.flatnonzero(network.node_member[1:] != network.node_member[:-1]) + 1)
+        self.first = network.first_nodes if self.chain else np.zeros(0, dtype=np.int64)  # (n_members,)
+        self._width = 0  # nodes of each member, where all are chains of as many nodes, and few
+        if self.chain and self.n_members > 1:
+            width, over = divmod(self.n_nodes, self.n_members)
+            if not over and width <= _FEW and bool((self.first == np.arange(0, self.n_nodes, width)).all()):
+                self._width = width
         self.n_links = self.n_nodes - 1 if self.chain else n_bars
 
     def to_links(self, values: Floats) -> Floats:
@@ -93,7 +97,7 @@ class Layout:
 
     def node_sums(self, nodal: Floats) -> Floats:
         """Sums of nodal values over members, (n_cases, n_members)."""
-        return self._sums(nodal, self._node_member)
+        return self._folded(np.add, nodal, self._width) if self._width else self._sums(nodal, self._node_member)
 
     def bar_sums(self, values: Floats) -> Floats:
         """Sums of bar values over members, (n_cases, n_members)."""
@@ -106,8 +110,18 @@ class Layout:
                 links.max(axis=1, keepdims=True, initial=0.0), -links.min(axis=1, keepdims=True, initial=0.0)
             )
             return most
+        size = np.abs(links)
+        if self._width:
+            return self._folded(np.maximum, size, self._width - 1)
         own = self._node_member[:-1] if self.chain else self._bar_member
-        return largest_at(np.zeros((links.shape[0], self.n_members)), own, np.abs(links))
+        return largest_at(np.zeros((links.shape[0], self.n_members)), own, size)
+
+    def _folded(self, fold: np.ufunc, values: Floats, count: int) -> Floats:
+        """Fold the first values of each member, at nodes or links, where all members have as many."""
+        out = values[:, :: self._width].copy()
+        for k in range(1, count):
+            fold(out, values[:, k :: self._width], out=out)
+        return out
 
     def _sums(self, values: Floats, at: Ints) -> Floats:
         if self.n_members == 1:
