@@ -9,32 +9,32 @@ from xlaxial import __version__
 from xlaxial.caution import CAUTION
 from xlaxial.cells import CellError
 from xlaxial.data.materials import EDITION, Material, lookup
+from xlaxial.functions.registry import ResultWord
+from xlaxial.functions.tabulated_help import MATERIAL_WORDS
 from xlaxial.problems import AxialError, Problem, UnitError
 from xlaxial.tables.numbers import parse_number
 from xlaxial.units import DIMENSIONS, normal, unit
 
-# what is asked -> (attribute, dimension)
-_QUANTITIES = {
-    "E": ("modulus", "stress"),
-    "G": ("shear", "stress"),
-    "Alpha": ("alpha", "expansion"),
-    "Density": ("density", "density"),
-    "Poisson's ratio": ("poisson", "ratio"),
-    "Yield": ("yield_stress", "stress"),
-    "Tensile strength": ("tensile", "stress"),
-    "fck": ("fck", "stress"),
-    "fcm": ("fcm", "stress"),
-    "fctm": ("fctm", "stress"),
-    "Source": ("source", "text"),
+_WORDS = {normal(spelling): word for word in MATERIAL_WORDS for spelling in (word.name, *word.aliases)}
+_FIELDS = {
+    "E": "modulus",
+    "G": "shear_modulus",
+    "Poisson's ratio": "poisson",
+    "Alpha": "alpha",
+    "Density": "density",
+    "Yield": "yield_stress",
+    "Tensile strength": "tensile",
+    "fck": "fck",
+    "fcm": "fcm",
+    "fctm": "fctm",
+    "Ecm": "secant_modulus",
 }
-_ALIASES = {
-    "Modulus": "E", "Young's modulus": "E", "Modulus of elasticity": "E", "Ecm": "E", "Shear modulus": "G",
-    "α": "Alpha", "Thermal expansion": "Alpha", "CTE": "Alpha", "ρ": "Density", "ν": "Poisson's ratio",
-    "fy": "Yield", "Yield stress": "Yield", "Yield strength": "Yield", "Rp0.2": "Yield", "ReH": "Yield",
-    "fu": "Tensile strength", "Rm": "Tensile strength", "Tensile": "Tensile strength",
-}  # fmt: skip
-_NAMES = {normal(name): name for name in _QUANTITIES} | {normal(alias): name for alias, name in _ALIASES.items()}
-_AT = re.compile(r"^(.*?)(?:\s*,\s*|\s+at\s+)(\d.*)$", re.IGNORECASE)
+_BY_SIZE = frozenset({"Yield", "Tensile strength"})
+_STRENGTHS = _BY_SIZE | {"fck", "fcm", "fctm"}
+
+_SOURCE_OF = re.compile(r"^source\s*(?:of|,)\s*(.+)$", re.IGNORECASE | re.DOTALL)
+_WITH_UNIT = re.compile(r"^(.*\S)\s*[(\[]([^()\[\]]+)[)\]]$", re.DOTALL)
+_AT = re.compile(r"^(.*?)(?:\s*,\s*|\s+at\s+)([-+−]?\d.*)$", re.IGNORECASE | re.DOTALL)
 
 
 def material(name: Any, what: Any, unit_text: Any = None) -> Any:
@@ -45,9 +45,14 @@ def material(name: Any, what: Any, unit_text: Any = None) -> Any:
     name : cell
         The material.
     what : cell
-        "E", "Alpha", "Yield, 40 mm" ...
+        "E", "Alpha (1e-6/K)", "Yield, 40 mm", "Source of Yield" ...
     unit_text : cell, optional
-        Unit of the answer; due for everything with a dimension.
+        Unit of the answer; due for everything with a dimension, here or in brackets behind `what`.
+
+    Returns
+    -------
+    float or str
+        The value in that unit; a text for a source.
 
     Raises
     ------
@@ -59,37 +64,49 @@ def material(name: Any, what: Any, unit_text: Any = None) -> Any:
     if not name or not what:
         raise AxialError(Problem("the name or the quantity is blank", 'write them, as in "S355", "E", "GPa"'))
     found = lookup(name)
+    if source := _SOURCE_OF.match(what):
+        return _source_of(found, source[1])
+    if bracketed := _WITH_UNIT.match(what):
+        if unit_text:
+            raise AxialError(
+                Problem("the unit is given twice", f"clear {unit_text!r}, or {bracketed[2]!r}", code="#NAME?")
+            )
+        what, unit_text = bracketed[1], bracketed[2].strip()
     place = _AT.match(what)
-    asked = _NAMES.get(normal(place[1] if place else what))
-    if asked is None:
-        raise AxialError(Problem(f"{what!r} is not tabulated", "write " + ", ".join(_QUANTITIES), code="#NAME?"))
-    attribute, dimension = _QUANTITIES[asked]
-    if dimension == "text":
-        return found.source[:255]
-    value = _value(found, attribute, _thickness(place[2]) if place else None)
-    if value != value:
-        raise AxialError(Problem(f"no {asked} is tabulated for {found.name}", "fill it in yourself", code="#N/A"))
-    if not unit_text:
-        if dimension == "ratio":
-            return value
-        example = DIMENSIONS[dimension].examples[0]
-        raise AxialError(
-            Problem(f"{asked} needs a unit", f'write it as the third argument, such as "{example}"', code="#NAME?")
-        )
-    try:
-        return value / unit(unit_text, dimension).factor
-    except UnitError as wrong:
-        raise wrong.at(code="#NAME?") from None
+    word = _word(place[1] if place else what)
+    if word.dimension == "text":
+        return f"{found.source}; {found.strength_source}" if found.strength_source else found.source
+    return _in_unit(_value(found, word, _thickness(place[2]) if place else None), word, unit_text)
 
 
 def _text(argument: Any) -> str:
+    """Text of one cell; of a range only where it is one cell."""
     if isinstance(argument, list):
-        argument = argument[0][0] if argument and argument[0] else None
+        if len(argument) != 1 or len(argument[0]) != 1:
+            raise AxialError(Problem("an argument is a range of several cells", "give one cell"))
+        argument = argument[0][0]
     if isinstance(argument, CellError):
         raise AxialError(Problem(f"an argument is {argument}", "mend it", code=argument.code))
     if isinstance(argument, float) and argument.is_integer():
         argument = int(argument)
     return "" if argument is None else str(argument).strip()
+
+
+def _word(what: str) -> ResultWord:
+    word = _WORDS.get(normal(what))
+    if word is None:
+        known = ", ".join(each.name for each in MATERIAL_WORDS)
+        raise AxialError(Problem(f"{what[:40]!r} is not tabulated", f"write one of {known}", code="#NAME?"))
+    return word
+
+
+def _source_of(found: Material, what: str) -> str:
+    place = _AT.match(what)
+    word = _word(place[1] if place else what)
+    source = found.strength_source if word.name in _STRENGTHS else found.source
+    if not source:
+        raise _none(found, word)
+    return source
 
 
 def _thickness(text: str) -> float:
@@ -99,14 +116,30 @@ def _thickness(text: str) -> float:
     return number * unit(own, "length").factor
 
 
-def _value(found: Material, attribute: str, thickness: float | None) -> float:
-    if attribute in ("yield_stress", "tensile"):
-        value: float = getattr(found.strength_at(thickness), attribute)
-        return value
-    if attribute == "shear":
-        return found.modulus / (2.0 * (1.0 + found.poisson))
-    other: float = getattr(found, attribute)
-    return other
+def _value(found: Material, word: ResultWord, thickness: float | None) -> float:
+    """Value in SI units; a thickness said for what does not depend on it is passed over."""
+    bearer = found.strength_at(thickness) if word.name in _BY_SIZE else found
+    value: float = getattr(bearer, _FIELDS[word.name])
+    if value != value:
+        raise _none(found, word)
+    return value
+
+
+def _none(found: Material, word: ResultWord) -> AxialError:
+    remedy = (found.without_yield if word.name in _BY_SIZE else "") or "fill it in yourself"
+    return AxialError(Problem(f"no {word.name} is tabulated for {found.name}", remedy, code="#N/A"))
+
+
+def _in_unit(value: float, word: ResultWord, unit_text: str) -> float:
+    if not unit_text:
+        if word.dimension == "ratio":
+            return value
+        remedy = f'write it as the third argument, such as "{DIMENSIONS[word.dimension].examples[0]}"'
+        raise AxialError(Problem(f"{word.name} needs a unit", remedy, code="#NAME?"))
+    try:
+        return value / unit(unit_text, word.dimension).factor
+    except UnitError as wrong:
+        raise wrong.at(code="#NAME?") from None
 
 
 def about() -> list[list[Any]]:
