@@ -1,4 +1,4 @@
-"""Functions of spreadsheets that the engine lacks, in the engine's own terms: matrices."""
+"""Functions of spreadsheets that the engine lacks, in the engine's own terms: matrices and summaries."""
 
 from __future__ import annotations
 
@@ -7,6 +7,8 @@ from typing import Any, TypeAlias
 
 import numpy as np
 import numpy.typing as npt
+
+from xlaxial.hosts.headless.aggregate import aggregate
 
 Matrix: TypeAlias = npt.NDArray[np.float64]
 _VALUE = {"type": "Error", "kind": "Value"}
@@ -57,4 +59,9 @@ def mdeterm(block: Any) -> Any:
     return _error_in(block) if a is None or a.shape[0] != a.shape[1] else float(np.linalg.det(a))
 
 
-SUPPLIED: dict[str, Callable[..., Any]] = {"MMULT": mmult, "MINVERSE": minverse, "MDETERM": mdeterm}
+SUPPLIED: dict[str, Callable[..., Any]] = {
+    "MMULT": mmult,
+    "MINVERSE": minverse,
+    "MDETERM": mdeterm,
+    "AX__AGGREGATE": aggregate,
+}

@@ -24,6 +24,7 @@ _EXTERNAL = re.compile(r"^(?:'?[^'!\[]*\[[^\]]+\][^!\]]*|\['[^']*'\][^!]*)!")
 _LONGEST = 8192
 _SEARCH_MODE = 5  # place of that argument of XLOOKUP, from 0
 _DEEPEST = 20  # names within names
+_REPLACED = {"AGGREGATE": "AX__AGGREGATE"}  # functions that the engine has in part only, by the supplied name
 _VOLATILE = frozenset(("NOW", "TODAY", "RAND", "RANDBETWEEN", "RANDARRAY"))
 _REACHING = frozenset(("INDIRECT", "OFFSET"))
 _GIVES_ARRAY = frozenset(
@@ -54,7 +55,7 @@ class Rewritten:
 
     text: str
     calls_ours: bool = False
-    references: list[str] = field(default_factory=list)  # operands that are ranges or cells, as put in
+    references: list[str] | None = field(default_factory=list)  # ranges and cells as put in; None: as in the text
     volatile: bool = False  # gives another value at every calculation
     reaching: bool = False  # reads cells that its text does not name
     by_place: bool = False  # what was put in depends on where the formula stands
@@ -80,7 +81,8 @@ class _Rewriting:
         self.context = context
         self.array = array
         self.depth = depth
-        self.made = Rewritten("")
+        self.references: list[str] = []
+        self.made = Rewritten("", references=self.references)
         self.stack = [_Frame("")]
         self.space = self.after_value = False  # a space is pending; the last token ended a value
 
@@ -146,7 +148,7 @@ class _Rewriting:
             return
         if not self.context.knows(name):
             raise CannotEvaluate(f"the function {name} is not available here")
-        frame.pieces.append(name + "(")
+        frame.pieces.append(_REPLACED.get(name, name) + "(")
         self.stack.append(_Frame(name))
 
     def _closed(self, frame: _Frame) -> str:
@@ -176,7 +178,7 @@ class _Rewriting:
         text = self._resolved(value.lstrip("@"))
         if text.startswith("("):
             return text
-        self.made.references.append(text)
+        self.references.append(text)
         if not is_range(text):
             return text
         self.made.may_spill |= any(frame.function == "" for frame in self.stack[-1:])
@@ -215,7 +217,7 @@ class _Rewriting:
         if self.depth >= _DEEPEST:
             raise CannotEvaluate("its names go round in a circle")
         inner = _rewritten("=" + named[1:-1], self.sheet, self.row, self.column, self.context, True, self.depth + 1)
-        self.made.references += inner.references
+        self.references += inner.references or ()
         self.made.volatile |= inner.volatile
         self.made.reaching |= inner.reaching
         self.made.calls_ours |= inner.calls_ours
