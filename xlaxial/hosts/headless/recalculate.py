@@ -2,49 +2,25 @@
 
 from __future__ import annotations
 
-import math
-import re
-from collections.abc import Callable, Mapping
-from dataclasses import dataclass, field, replace
+import gc
+from collections.abc import Callable, Iterator, Mapping
+from contextlib import contextmanager
+from dataclasses import dataclass, field
 from pathlib import Path
 from typing import Any
 
-from openpyxl.utils import get_column_letter
-
 from xlaxial.cells import CellError
 from xlaxial.hosts.headless.calls import Spills, anchored, engine_function, fit
+from xlaxial.hosts.headless.compare import DIFFERENT, FROZEN, NOT_STORED, RTOL, SAME, Result, compare
 from xlaxial.hosts.headless.engine import Engine, Unevaluated, knows
 from xlaxial.hosts.headless.errors import CannotEvaluate, WorkbookError
 from xlaxial.hosts.headless.freezing import Readers, area_of
-from xlaxial.hosts.headless.prepass.copies import Copies
+from xlaxial.hosts.headless.prepass.copies import Copies, references
 from xlaxial.hosts.headless.prepass.rewrite import ANCHOR, FIT, SPILL, Context, Rewritten
 from xlaxial.hosts.headless.supplied import SUPPLIED
 from xlaxial.hosts.headless.workbook import LARGEST_ARRAY, Book, Formula, read_book
 
-SAME, DIFFERENT, NOT_STORED, FROZEN = "same", "different", "no stored value", "not recalculated"
-RTOL = 1e-9
-_LONG_NUMBER = re.compile(r"(?<![\w.])(?=[\d.]{17})\d{1,15}\.\d+(?![\d.])")
-_TINY = 1e-12  # what is left of a difference that is 0
-_NOISE = 1e-15  # numbers below this differ by rounding only
-
-
-@dataclass(frozen=True)
-class Result:
-    """One cell recalculated."""
-
-    sheet: str
-    row: int
-    column: int
-    formula: str  # of the cell, or of the array that fills it
-    stored: Any
-    new: Any  # the stored value where the cell is not recalculated
-    state: str  # one of SAME, DIFFERENT, NOT_STORED, FROZEN
-    reason: str = ""  # why it is not recalculated
-
-    @property
-    def cell(self) -> str:
-        """Address without the sheet."""
-        return f"{get_column_letter(self.column)}{self.row}"
+__all__ = ["DIFFERENT", "FROZEN", "NOT_STORED", "RTOL", "SAME", "Recalculation", "Result", "recalculate"]
 
 
 @dataclass
@@ -101,7 +77,26 @@ def recalculate(
     WorkbookError
         The file cannot be taken up, or its evaluation takes too long.
     """
-    book = read_book(Path(path))
+    with _no_collector():
+        return _recalculated(Path(path), functions, rtol, volatile, seconds)
+
+
+@contextmanager
+def _no_collector() -> Iterator[None]:
+    """Keep the garbage collector from walking again and again through cells that are all in use."""
+    enabled = gc.isenabled()
+    gc.disable()
+    try:
+        yield
+    finally:
+        if enabled:
+            gc.enable()
+
+
+def _recalculated(
+    path: Path, functions: Mapping[str, Callable[..., Any]] | None, rtol: float, volatile: bool, seconds: float
+) -> Recalculation:
+    book = read_book(path)
     known = worksheet_functions() if functions is None else dict(functions)
     run = _Run(book, known, volatile, seconds)
     try:
@@ -109,11 +104,11 @@ def recalculate(
             run.enter()
             run.engine.evaluate()
     except TimeoutError:
-        raise WorkbookError(f"{Path(path).name}: its evaluation takes longer than {seconds:g} s") from None
+        raise WorkbookError(f"{path.name}: its evaluation takes longer than {seconds:g} s") from None
     run.freeze_unevaluated()
     run.resize()
     run.freeze_downstream()
-    return Recalculation(Path(path), book, _compare(run.engine, book, run.frozen, rtol))
+    return Recalculation(path, book, compare(run.engine, book, run.frozen, rtol))
 
 
 class _Run:
@@ -165,7 +160,7 @@ class _Run:
         if made.volatile and not self.volatile:
             raise CannotEvaluate("changes at every calculation")
         if made.counts_hidden and any(
-            area and area[0] in self.hiding for area in (area_of(text, formula.sheet) for text in made.references)
+            area and area[0] in self.hiding for area in (area_of(text, formula.sheet) for text in references(made))
         ):
             raise CannotEvaluate("depends on which rows are hidden")
         text = made.text
@@ -215,7 +210,7 @@ class _Run:
         sheets = {sheet.name.lower(): sheet.name for sheet in self.book.sheets}
         for formula, made in self.ready:
             key = formula.sheet.lower()
-            reads = (area_of(reference, formula.sheet) for reference in made.references)
+            reads = (area_of(reference, formula.sheet) for reference in references(made))
             readers.add(
                 [(key, row, column) for row, column in formula.places()],
                 [area for area in reads if area is not None],
@@ -223,50 +218,3 @@ class _Run:
             )
         for name, row, column in readers.downstream((sheet.lower(), r, c) for sheet, r, c in self.frozen):
             self.frozen[sheets[name], row, column] = "reads a cell that is not recalculated"
-
-
-def _compare(engine: Engine, book: Book, frozen: dict[tuple[str, int, int], str], rtol: float) -> list[Result]:
-    out = []
-    for sheet in book.sheets:
-        text, spilled = {}, {}
-        for formula in sheet.formulas:
-            now = replace(formula, area=sheet.resized.get((formula.row, formula.column), formula.area))
-            spilled.update(dict.fromkeys(now.places(), formula.text))
-            text.update(dict.fromkeys(formula.places(), formula.text))
-        for row, column in {**text, **spilled}:
-            place, stored = (sheet.name, row, column), sheet.stored.get((row, column))
-            source = text.get((row, column)) or spilled[row, column]
-            if place in frozen:
-                out.append(Result(*place, source, stored, stored, FROZEN, frozen[place]))
-                continue
-            new = fifteen_digits(engine.value(*place))
-            if new is None and (row, column) in spilled:
-                new = 0.0
-            state = SAME if equal(stored, new, rtol) else DIFFERENT
-            if stored is None and new not in ("", None) and (row, column) in text:
-                state = NOT_STORED
-            out.append(Result(*place, source, stored, new, state))
-    return out
-
-
-def fifteen_digits(value: Any) -> Any:
-    """Return a text with its numbers cut to 15 digits, as spreadsheets join them; anything else as it is."""
-    if not isinstance(value, str) or len(value) < 17:
-        return value
-    return _LONG_NUMBER.sub(lambda found: f"{float(found[0]):.15g}", value)
-
-
-def equal(stored: Any, new: Any, rtol: float) -> bool:
-    """Whether a stored and a new value are the same.
-
-    Numbers within `rtol` of each other; both below 1e-15; or one of them 0, as spreadsheets show what is left of a
-    difference, and the other below 1e-12. A blank and an empty text; texts, booleans and error values exactly.
-    """
-    if stored in (None, "") or new in (None, ""):
-        return stored in (None, "") and new in (None, "")
-    if isinstance(stored, bool) or isinstance(new, bool):
-        return stored is new
-    if isinstance(stored, (int, float)) and isinstance(new, (int, float)):
-        tiny = _TINY if 0.0 in (stored, new) else _NOISE
-        return math.isclose(stored, new, rel_tol=rtol, abs_tol=tiny)
-    return bool(stored == new)

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import re
-from dataclasses import replace
 
 from xlaxial.hosts.headless.prepass.rewrite import Context, Rewritten, rewrite
 
@@ -28,8 +27,10 @@ class Copies:
         pattern = sheet, _PART.sub(_blanked, formula), array
         model = self._passed.get(pattern)
         if model is not None:
-            references = [found[0] for found in _PART.finditer(formula) if not found[0].startswith('"')]
-            return replace(model, text=formula, references=references)
+            return Rewritten(
+                formula, model.calls_ours, None, model.volatile, model.reaching, False, model.may_spill, model.doubtful,
+                model.counts_hidden,
+            )  # fmt: skip
         made = rewrite(formula, sheet, row, column, self._context, array=array)
         if made.text == formula and not made.by_place:
             self._passed[pattern] = made
@@ -40,3 +41,10 @@ def _blanked(found: re.Match[str]) -> str:
     if found[0].startswith('"'):
         return found[0]
     return f"{found[1]}?{':?' if found[2] else ''}"
+
+
+def references(made: Rewritten) -> list[str]:
+    """Return what a formula reads: operands that are ranges or cells."""
+    if made.references is not None:
+        return made.references
+    return [found[0] for found in _PART.finditer(made.text) if not found[0].startswith('"')]

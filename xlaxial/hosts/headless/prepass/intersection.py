@@ -51,7 +51,7 @@ def takes_one_value(calls: list[tuple[str, int]]) -> bool:
 
 def is_range(operand: str) -> bool:
     """Whether an operand is more than one cell."""
-    return any(pattern.match(operand) for pattern in (_AREA, _COLUMNS, _ROWS))
+    return ":" in operand and any(pattern.match(operand) for pattern in (_AREA, _COLUMNS, _ROWS))
 
 
 def intersect(operand: str, row: int, column: int) -> str:
