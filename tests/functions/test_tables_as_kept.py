@@ -261,3 +261,14 @@ def test_units_that_are_signs_alone_are_units() -> None:
             table, [["Node"], [0], [1]], None, [["Stress (MPa)", "Utilisation (%)", "Utilisation", "Utilisation (-)"]]
         )
         assert rows == [[pytest.approx(-100), pytest.approx(40), pytest.approx(0.4), pytest.approx(0.4)]], heading
+
+
+def test_a_tube_of_a_steel_graded_by_diameter_takes_its_outside_diameter() -> None:
+    """42CrMo4 by EN ISO 683-2: 40 to 100 mm 650 MPa, 16 to 40 mm 750 MPa; the wall of a tube is not its ruling section."""
+    table = [["L (mm)", "OD (mm)", "Wall (mm)", "Material", "dT (K)"], [1000, 90, 10, "42CrMo4", 50]]
+    [[stress, utilisation]] = AX_SEGMENTS(table, [["Node"], [0], [1]], None, [["Stress (MPa)", "Utilisation"]])
+    assert utilisation == pytest.approx(-stress / 650)
+    unknown = [["L (mm)", "A (mm2)", "Material", "dT (K)"], [1000, 90, "42CrMo4", 50]]
+    [[utilisation, status]] = AX_SEGMENTS(unknown, [["Node"], [0], [1]], None, [["Utilisation", "Status"]])
+    assert utilisation == CellError("#N/A")
+    assert "fill in Yield" in status or "Yield, " in status

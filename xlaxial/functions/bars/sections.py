@@ -122,8 +122,10 @@ def _materials(table: Table, members: Members, tapered: Flags) -> tuple[Floats, 
     from xlaxial.data.materials import lookup
 
     modulus, alpha, strength = modulus.copy(), alpha.copy(), strength.copy()
-    thickness = np.fmax(table.values("Diameter", np.nan), table.values("End diameter", np.nan))
-    thickness = np.where(table.present("Outside diameter"), table.values("Wall", np.nan), thickness)
+    tube = table.present("Outside diameter")
+    across = np.fmax(table.values("Diameter", np.nan), table.values("End diameter", np.nan))
+    diameter = np.where(tube, table.values("Outside diameter", np.nan), across)
+    wall = np.where(tube, table.values("Wall", np.nan), across)
     by_name: dict[str, list[int]] = {}
     for i, name in enumerate(names):
         if name is not None and members.row_member[i] >= 0:
@@ -138,11 +140,13 @@ def _materials(table: Table, members: Members, tapered: Flags) -> tuple[Floats, 
             continue
         modulus[at] = np.where(np.isnan(modulus[at]), material.modulus, modulus[at])
         alpha[at] = np.where(np.isnan(alpha[at]), material.alpha, alpha[at])
+        thickness = diameter if material.size == "diameter" else wall
         for thick in np.unique(thickness[at]):  # nan, where no thickness is known, comes once
             same = at[np.isnan(thickness[at]) if np.isnan(thick) else thickness[at] == thick]
             lacking = same[np.isnan(strength[same])]
             try:
                 strength[lacking] = material.yield_at(None if np.isnan(thick) else float(thick))
             except AxialError as wrong:
-                notes.update(dict.fromkeys(lacking.tolist(), wrong.problem.what))
+                said = f"{wrong.problem.what}: {wrong.problem.remedy}"
+                notes.update(dict.fromkeys(lacking.tolist(), said))
     return modulus, alpha, strength, notes
