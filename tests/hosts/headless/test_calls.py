@@ -79,6 +79,23 @@ def test_a_table_arrives_with_its_headings(make_book: Any) -> None:
     assert list(map(list, block)) == [["Mark", "Length (mm)"], ["a", 5.0]]
 
 
+@pytest.mark.parametrize("name", ["Ties[#All]", "S!$B$2:$C$3", "S!$B:$C", "S!$2:$3", "other"])
+def test_a_name_of_any_kind_of_range_arrives_with_its_place(make_book: Any, name: str) -> None:
+    spy = Spy()
+    cells = {"S!B2": "Mark", "S!C2": "Length (mm)", "S!B3": "a", "S!C3": 5, "S!C4": "=AX_SPY(block)+0*ROWS(block)"}
+    names = {"block": name, "other": "(S!$B$2:$C$3)"}
+    recalculate(make_book(cells, names=names, tables={"Ties": "S!B2:C3"}), {"AX_SPY": spy})
+    if name == "S!$B:$C":  # the formula stands in its own columns
+        assert spy.calls == []
+        return
+    (block,) = spy.calls[0]
+    assert isinstance(block, CellRange)
+    assert (block.sheet, block.row) == ("S", 2)
+    assert block.column == (1 if name == "S!$2:$3" else 2)
+    assert "Length (mm)" in block[0]
+    assert len(block) == 2
+
+
 def test_omitted_arguments_are_none_wherever_they_stand(make_book: Any) -> None:
     assert called(make_book, '=AX_SPY(,2,,"x",)') == (None, 2.0, None, "x")
     assert called(make_book, "=AX_SPY()") == ()

@@ -33,6 +33,7 @@ from xlaxial.hosts.headless.recalculate import FROZEN, recalculate
         ("=SUM((A1:A2,B1))", "not implemented by the engine"),
         ("=SUM(A1", "cannot be read|brackets do not match"),
         ("=elsewhere", "refers to another workbook"),
+        ("=moving*2", "the name moving moves with the cell that uses it"),
     ],
 )
 def test_reason_and_dependents(make_book: Any, formula: str, reason: str) -> None:
@@ -41,7 +42,7 @@ def test_reason_and_dependents(make_book: Any, formula: str, reason: str) -> Non
         "S!E1": "=D1+1", "S!E2": "=E1+1", "S!E3": "=SUM(C1:E1)", "S!E4": "=named", "S!E5": '=INDIRECT("D"&1)', "S!F1": "=A1+A2",
         "S!E6": "=SUM(D:D)", "S!E7": "=SUM(1:1)", "T!A1": "=S!D1", "T!A2": "=IFERROR(S!D1,0)",
     }  # fmt: skip
-    path = make_book(cells, names={"named": "S!$E$2", "elsewhere": "[1]Other!$A$1"})
+    path = make_book(cells, names={"named": "S!$E$2", "elsewhere": "[1]Other!$A$1", "moving": "S!A$1+1"})
     results = {f"{r.sheet}!{r.cell}": r for r in recalculate(path, {}).results}
     assert re.search(reason, results["S!D1"].reason), results["S!D1"]
     frozen = {place for place, result in results.items() if result.state == FROZEN}

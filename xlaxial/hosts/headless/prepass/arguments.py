@@ -29,7 +29,10 @@ def tagged(argument: str, sheet: str, extents: dict[str, tuple[int, int]]) -> st
     text = argument.strip()
     if not text:
         return f'"{OMITTED}",""'
-    found = _REFERENCE.match(text)
+    found, inner = _REFERENCE.match(text), text
+    while not found and inner.startswith("(") and inner.endswith(")"):  # a reference behind a name comes in brackets
+        inner = inner[1:-1].strip()
+        found = _REFERENCE.match(inner)
     if not found:
         return f'"{VALUE}",{argument}'
     name = found[1][:-1].strip("'").replace("''", "'") if found[1] else sheet

@@ -5,11 +5,17 @@ from __future__ import annotations
 import re
 from dataclasses import dataclass, field
 
+from xlaxial.hosts.headless.errors import CannotEvaluate
+
 _NAME = re.compile(r"^[^\W\d](?:[\w.\\?]*)$|^\\[\w.\\?]*$")
 _QUALIFIED = re.compile(r"^('(?:[^']|'')+'|[^'!]+)!([^\W\d][\w.\\?]*)$")
+_SHEET = r"(?:(?:'(?:[^']|'')+'|[^'!()+*/,;\s-]+)!)?"
 _RANGE = re.compile(
-    r"^(?:(?:'(?:[^']|'')+'|[^'!()+*/,;\s-]+)!)?\$?[A-Z]{1,3}\$?\d+(?::\$?[A-Z]{1,3}\$?\d+)?$", re.IGNORECASE
+    rf"^{_SHEET}(?:\$?[A-Z]{{1,3}}\$?\d+(?::\$?[A-Z]{{1,3}}\$?\d+)?|\$?[A-Z]{{1,3}}:\$?[A-Z]{{1,3}}|\$?\d+:\$?\d+)$",
+    re.IGNORECASE,
 )
+_ASIDE = re.compile(r"\"[^\"]*\"|'[^']*'|\[[^\]]*\]")  # texts, quoted sheets, columns of tables
+_RELATIVE = re.compile(r"(?<![\w$.])(?:[A-Z]{1,3}\$?\d{1,7}|\$[A-Z]{1,3}\d{1,7})(?![\w(.!])")
 _COLUMN_OR_ROW = re.compile(r"^(?:TRUE|FALSE|R|C|R\d+C\d+)$", re.IGNORECASE)
 _CELL = re.compile(r"^\$?[A-Z]{1,3}\$?\d{1,7}$", re.IGNORECASE)
 
@@ -22,7 +28,13 @@ class Names:
     sheets: dict[tuple[str, str], str] = field(default_factory=dict)  # (lower-case sheet, name) -> text
 
     def resolve(self, operand: str, sheet: str) -> str | None:
-        """Return the text to put in for an operand: a range as it is, a formula in brackets; None where no name."""
+        """Return the text to put in for an operand: a range as it is, a formula in brackets; None where no name.
+
+        Raises
+        ------
+        CannotEvaluate
+            The name has a relative reference, which means another cell in every cell that uses it.
+        """
         name, scope = operand, sheet.lower()
         qualified = _QUALIFIED.match(operand)
         if qualified:
@@ -33,6 +45,8 @@ class Names:
         if text is None:
             return None
         text = text.lstrip("=")
+        if _RELATIVE.search(_ASIDE.sub("", text)):
+            raise CannotEvaluate(f"the name {name} moves with the cell that uses it")
         return text if _RANGE.match(text) else f"({text})"
 
 
