@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import datetime as dt
+import time
 from typing import Any
 
 import pytest
@@ -130,6 +131,22 @@ def test_what_a_call_reads_is_followed(make_book: Any) -> None:
     cells = {"S!A1": 1, "S!A2": "=A1+1", "S!A3": "=C1*10", "S!B1": "=AX_T(A1:A3)", "S!C1": "=A2+1"}
     new = {r.cell: r.new for r in recalculate(make_book(cells), {"AX_T": total}).results}
     assert new["B1"] == 1 + 2 + 30
+
+
+def test_one_call_at_a_time(make_book: Any) -> None:
+    inside: list[int] = []
+    most: list[int] = []
+
+    def slow(*_: Any) -> float:
+        inside.append(1)
+        most.append(len(inside))
+        time.sleep(0.0005)
+        inside.pop()
+        return 1.0
+
+    cells = {f"S!A{i}": i for i in range(1, 101)} | {f"S!B{i}": f"=AX_SLOW(A{i})" for i in range(1, 101)}
+    recalculate(make_book(cells), {"AX_SLOW": slow})
+    assert most == [1] * 100
 
 
 @pytest.mark.parametrize(

@@ -86,6 +86,7 @@ class Engine:
 
     def __init__(self, *, date_1904: bool = False, seconds: float = 120.0) -> None:
         settings = formualizer.EvaluationConfig()
+        settings.enable_parallel = False  # our functions are not called from two threads at once
         settings.date_system = "1904" if date_1904 else "1900"
         mode = formualizer.WorkbookMode.Ephemeral
         self._book = formualizer.Workbook(config=formualizer.WorkbookConfig(mode=mode, eval_config=settings))
