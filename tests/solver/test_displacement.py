@@ -156,6 +156,12 @@ def test_mechanism_that_slips_through_is_not_answered(network, actions):
         assert np.isnan(state.force_start[2, 0])
 
 
+def test_two_rigid_supports_at_a_node_show_in_the_residual(network, actions):
+    # which of them carries what cannot be told; callers refuse them, and the sum of forces would tell on them
+    net = network([(0, 1)], [(0, np.inf), (0, np.inf)])
+    assert solve_linear(net, actions(net, [0.0, 5.0])).residual[0, 0] == pytest.approx(1.0)
+
+
 def test_nothing_acts(network, actions):
     net = network([(0, 1), (1, 2)], [(0, np.inf), (2, 1.0)])
     state = solve_linear(net, actions(net))

@@ -102,18 +102,18 @@ class Found:
 def _equations(network: Network, actions: Actions, preload: Floats | None) -> Equations:
     """Put actions in rows, loads along bars turned into their free lengthening and end loads."""
     bars = network.bars
-    free = in_rows(actions.imposed)
+    free: Floats | None = in_rows(actions.imposed) if actions.imposed.any() else None
     if preload is not None and preload.any():
-        free = free + preload.T
+        free = in_rows(preload) if free is None else free + preload.T
     span = None
     if actions.distributed.any():
         q = in_rows(actions.distributed)
-        free = free - q * load_lever(bars)
+        free = (0.0 if free is None else free) - q * load_lever(bars)
         span = q * bars.length
     return Equations(
         network,
         stiffness(bars),
-        free if free.any() else None,
+        free,
         span,
         in_rows(actions.force),
         in_rows(actions.settlement) if actions.settlement.any() else None,
@@ -178,16 +178,15 @@ def _first(equations: Equations, balance: Balance, solver: _Solver) -> tuple[Flo
 def _refine(balance: Balance, solver: _Solver, u: Floats, out: Floats) -> tuple[Floats | None, Floats, Floats]:
     """Refine u in place; return what it lacks to a sum of two doubles, the bound of any force's error, and scratch."""
     low: Floats | None = None
-    worst = np.inf
+    before = np.full((u.shape[0], balance.layout.n_members), np.inf)
     for _ in range(_ROUNDS):
         solver.solve_rows(out)
         low = _add(u, low, out)
         out = balance.check(u, low)
         bound = balance.measure(out, TRUSTED, u)
-        now = float(bound.max(initial=0.0))
-        if now <= TRUSTED or not now < 0.25 * worst:
+        if not ((bound > TRUSTED) & (bound < 0.25 * before)).any():  # none that needs more still gains
             break
-        worst = now
+        before = bound
     return low, bound, out
 
 
