@@ -118,6 +118,14 @@ HARD = {
         [1e2, 0, -3e3, 0, 10],
         [0.11, -0.21, 0.33, 0],
     ),
+    "beyond the usual factors": ([(0, 1, 1e20)], [(0, 1.0), (1, 3.0)], [7e3, -3e3], [1e-3]),
+    "beyond the usual factors, branched": (
+        [(0, 1, 1e20), (0, 2, 3e20), (2, 1, 1e19), (1, 3, 1e2)],
+        [(0, 1.0), (3, 3.0)],
+        [7e3, -3e3, 0, 0],
+        None,
+    ),
+    "springs as stiff as rigid": ([(0, 1, 2e8), (1, 2, 3e8)], [(0, 1e22), (2, 1e25)], [0, 5e3, 0], [1e-3, 0]),
     "mesh": (
         [(0, 3, 1e15), (3, 1, 1e3), (1, 4, 1e12), (4, 2, 1e4), (0, 4, 2e6), (3, 2, 1e15), (2, 0, 1e5)],
         [(0, 1e3), (4, np.inf)],
@@ -159,6 +167,40 @@ def test_random_ratios(seed, ratio):
     error = worst(network, actions, state)
     assert error < (OF_LARGEST if ratio <= 1e16 else 1e-6)
     assert error <= 10.0 * state.imbalance.max() + 1e-12
+
+
+@pytest.mark.parametrize("sizes", [[20_000], [3000, 5, 4000]])
+def test_long_chains_between_rigid_supports(sizes):
+    # redundant of bars in series, by flexibilities: R_last = -sum F_i (f_1 + ... + f_i)/sum f, at 50 digits
+    rng = np.random.default_rng(sum(sizes))
+    ends, supports, member, first = [], [], [], 0
+    for m, n in enumerate(sizes):
+        ends += [(first + i, first + i + 1, 10.0 ** rng.uniform(-3.0, 3.0)) for i in range(n)]
+        supports += [(first, np.inf), (first + n, np.inf)]
+        member += [m] * (n + 1)
+        first += n + 1
+    network = springs(first, ends, supports, member)
+    force = rng.normal(size=first)
+    state = solve_linear(network, actions_on(network, force))
+    a = 0
+    for m, n in enumerate(sizes):
+        with mpmath.workdps(50):
+            k = [mpmath.mpf(float(v)) for v in network.bars.area_start[a : a + n]]
+            loads = [mpmath.mpf(float(v)) for v in force[a + m : a + m + n + 1]]
+            reach = moment = mpmath.mpf(0)
+            for i in range(1, n):
+                reach += 1 / k[i - 1]
+                moment += loads[i] * reach
+            pull = -moment / (reach + 1 / k[n - 1])
+            errors, largest = [], mpmath.mpf(0)
+            for i in range(n - 1, -1, -1):
+                errors.append(abs(mpmath.mpf(float(state.force_start[a + i, 0])) - pull))
+                largest = max(largest, abs(pull))
+                pull += loads[i]
+            assert float(max(errors) / largest) < 1e-11
+        a += n
+    assert state.imbalance.max() <= 1e-11
+    assert state.residual.max() < 1e-11
 
 
 def test_one_ill_member_among_good_ones_leaves_them_alone():
