@@ -14,7 +14,7 @@ from dataclasses import dataclass
 from typing import Any
 from unittest import mock
 
-OMITTED = -2147352572  # DISP_E_PARAMNOTFOUND (0x80020004): how an argument left out arrives
+OMITTED = object()
 SCODE = -2146828288  # 0x800A0000: an error value of a cell arrives as this plus its number
 
 
@@ -119,7 +119,7 @@ def _take(argument: Any) -> tuple[str, Any]:
         if not isinstance(argument[0], list):
             return "", tuple(map(_sent, argument))
         return "", tuple(tuple(map(_sent, row)) for row in argument)
-    return "", argument if argument == OMITTED and type(argument) is int else _sent(argument)
+    return ("-", None) if argument is OMITTED else ("", _sent(argument))
 
 
 def _received(cell: Any) -> Any:

@@ -111,7 +111,7 @@ def test_every_name_is_declared():
     kept_words = """
         Dim As Long Variant String Boolean Object Range Worksheet On Error GoTo Resume Next Exit Function Sub End
         If Then Else ElseIf For To Step Not And Or Is Nothing Set Err Raise Description CVErr xlErrValue UBound
-        LBound ReDim IsObject TypeOf IsArray IsMissing VarType vbCurrency vbLong vbLf vbObjectError CStr Chr Left
+        LBound ReDim IsObject TypeOf IsArray IsMissing VarType vbCurrency vbLong vbLf CStr Chr Left
         Len Abs Timer StrPtr ThisWorkbook Application Array True False Now Public Private Optional ByVal ByRef
         Single Attribute
     """

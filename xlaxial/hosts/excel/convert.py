@@ -42,6 +42,9 @@ _DAY_ZERO = dt.date(1899, 12, 30)  # serial number 0: a time of the day without 
 DOWN, RIGHT = 1, 2
 """Marks of a place: the range reached the sheet's last row, its last column."""
 
+OMITTED = "-"
+"""The place of an argument that was left out."""
+
 
 def _of_int(value: int) -> Cell:
     if value in _ERRORS:
@@ -79,17 +82,19 @@ def argument_in(value: Any, place: str = "") -> Any:
     Parameters
     ----------
     value : object
-        A value, or a tuple of rows (of one dimension: one row) from a range or an inline array; None where the argument
-        was left out.
+        A value, or a tuple of rows (of one dimension: one row) from a range or an inline array.
     place : str, optional
         Of a range: ``row,column,open,sheet``, row and column from 1, `open` the sum of `DOWN` and `RIGHT` for a range
-        that reaches the sheet's end and was cut off at the last used cell. Empty for what is no range.
+        that reaches the sheet's end and was cut off at the last used cell. Empty for what is no range, `OMITTED` for
+        an argument left out.
 
     Returns
     -------
     None, cell, list of lists or xlaxial.CellRange
         Blank rows and columns at an open end are cut off.
     """
+    if place == OMITTED:
+        return None
     rows = [_row_in(row) for row in _two_dimensional(value)] if isinstance(value, tuple) else [[cell_in(value)]]
     if not place:
         return rows if isinstance(value, tuple) else rows[0][0]

@@ -40,7 +40,7 @@ Private Function axCall(ByVal functionName As String, ByVal given As Variant) As
     count = UBound(given) - LBound(given) + 1
     ReDim sent(0 To count)
     For k = 0 To count - 1
-        places = places & axTake(given(LBound(given) + k), sent(k)) & vbLf
+        places = places & axTake(sent(k), given(LBound(given) + k)) & vbLf
     Next k
     sent(count) = places
     packed = sent
@@ -64,10 +64,10 @@ End Function
 Private Function axServer() As Object
     Dim found As Variant
     If axKept Is Nothing Then
-        If Len(axRefused) > 0 And Abs(Timer - axRefusedAt) < AX_PAUSE Then Err.Raise vbObjectError + 513, "xlaxial", axRefused
+        If Len(axRefused) > 0 And Abs(Timer - axRefusedAt) < AX_PAUSE Then Err.Raise 1000, "xlaxial", axRefused
         On Error GoTo refused
         axLoad
-        If XLPyDLLActivateAuto(found, axCommand(), 1) <> 0 Then Err.Raise vbObjectError + 513, "xlaxial", CStr(found)
+        If XLPyDLLActivateAuto(found, axCommand(), 1) <> 0 Then Err.Raise 1000, "xlaxial", CStr(found)
         Set axKept = found
         axRefused = ""
     End If
@@ -76,7 +76,7 @@ Private Function axServer() As Object
 refused:
     axRefused = Err.Description
     axRefusedAt = Timer
-    Err.Raise vbObjectError + 513, "xlaxial", axRefused
+    Err.Raise 1000, "xlaxial", axRefused
 End Function
 
 Private Function axSetting(ByVal rowNumber As Long) As String
@@ -86,7 +86,7 @@ End Function
 Private Sub axLoad()
     Dim path As String
     path = axSetting(2) & "\" & AX_LIBRARY
-    If LoadLibraryW(StrPtr(path)) = 0 Then Err.Raise vbObjectError + 514, "xlaxial", "cannot load " & path
+    If LoadLibraryW(StrPtr(path)) = 0 Then Err.Raise 1000, "xlaxial", "cannot load " & path
 End Sub
 
 Private Function axCommand() As String
@@ -96,10 +96,13 @@ Private Function axCommand() As String
         & "from xlaxial.hosts.excel.server import run; run('$(CLSID)')" & quote
 End Function
 
-' ---- arguments: the value into "value", the place of a range as the result: row,column,open ends,sheet
+' ---- arguments: the value into "value"; the result is the place of a range (row,column,open ends,sheet), "-" for an
+' argument left out, nothing for a value
 
-Private Function axTake(ByVal given As Variant, ByRef value As Variant) As String
-    If IsObject(given) Then
+Private Function axTake(ByRef value As Variant, Optional ByVal given As Variant) As String
+    If IsMissing(given) Then
+        axTake = "-"
+    ElseIf IsObject(given) Then
         If TypeOf given Is Range Then
             axTake = axRange(given, value)
         Else

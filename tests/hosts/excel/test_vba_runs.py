@@ -1,0 +1,145 @@
+"""The add-in's VBA is run by the only other program that runs VBA: LibreOffice's Basic, in its mode for it.
+
+The library that starts Python is replaced by a class of Basic that tells what reached it.
+"""
+
+from __future__ import annotations
+
+import json
+import os
+import re
+import subprocess
+import sys
+import uuid
+from pathlib import Path
+
+import pytest
+
+from xlaxial.functions.registry import Argument, Function, load
+from xlaxial.hosts.calc.extension import OFFICE_LEAST
+from xlaxial.hosts.calc.office import command, environment, find_office, write_settings
+from xlaxial.hosts.excel.vba import Names, module_text
+
+HERE = Path(__file__).parent
+sys.path.append(str(HERE.parent / "calc"))
+from calc_live import office_python  # noqa: E402 - found by the line above
+
+pytestmark = pytest.mark.office
+
+TABLE = Argument("table", "Table.", "table")
+LATER = Argument("later", "Later.", "cells", optional=True)
+MARK = Argument("mark", "Mark.", "value")
+FUNCTIONS = (
+    Function("AX_GRID", "Grid.", (TABLE, LATER, MARK), "", "here:x", ""),
+    Function("AX_CLOCK", "Clock.", (), "", "here:x", ""),
+    Function("AX_ABOUT", "About.", (), "", "here:x", ""),
+)
+TESTS = (HERE / "basic_tests.bas").read_text(encoding="ascii")
+PROCEDURES = re.findall(r"^Function (\w+)\(\)", TESTS, re.MULTILINE)
+HEAD = "Rem Attribute VBA_ModuleType=VBAModule\nOption VBASupport 1\n"
+LIBRARY = """
+Public Started As Long, Lost As Long, Refuse As Boolean
+Private Function XLPyDLLActivateAuto(found As Variant, config As String, mode As Long) As Long
+    Started = Started + 1
+    If Refuse Then
+        found = "no such Python"
+        XLPyDLLActivateAuto = 1
+    Else
+        Set found = New Server
+    End If
+End Function
+Private Function LoadLibraryW(path As Variant) As Long
+    LoadLibraryW = 1
+End Function
+Private Function StrPtr(text As String) As String
+    StrPtr = text
+End Function
+Public Sub axForget()
+    Set axKept = Nothing
+    axRefused = ""
+End Sub
+"""
+
+
+def as_basic(text: str) -> str:
+    """Leave out what Basic lacks (attributes, directives, the library); let the tests reach the helpers."""
+    text = re.sub(r"^Attribute .*\n", "", text, flags=re.MULTILINE)
+    text = re.sub(r"#If.*?#Else\n(.*?)#End If\n", r"\1", text, flags=re.DOTALL)
+    text = re.sub(r"^Private Declare .*\n", "", text, flags=re.MULTILINE)
+    text = re.sub(r"^Private (Function|Sub) (ax(?:Answer|Take))\b", r"Public \1 \2", text, flags=re.MULTILINE)
+    return HEAD + text.replace("\nPrivate axKept", LIBRARY + "\nPrivate axKept", 1)
+
+
+@pytest.fixture(scope="module")
+def told(tmp_path_factory):
+    office = find_office()
+    if office is None or not office.at_least(OFFICE_LEAST):
+        (pytest.fail if os.environ.get("CI") else pytest.skip)("LibreOffice is not installed")
+    python = office_python(office)
+    if python is None:
+        (pytest.fail if os.environ.get("CI") else pytest.skip)("no Python knows UNO")
+    names = Names("1.2.3", "0.0.1", "xlwings64-0.0.1.dll", "xlwings32-0.0.1.dll", module="here")
+    profile, empty = tmp_path_factory.mktemp("profile"), tmp_path_factory.mktemp("extensions")
+    write_settings(profile)
+    pipe = f"xlaxial{uuid.uuid4().hex}"
+    job = {
+        "pipe": pipe,
+        "modules": {
+            "Server": (HERE / "basic_server.bas").read_text(encoding="ascii"),
+            "Module1": as_basic(module_text(FUNCTIONS, names)),
+            "Product": as_basic(module_text(load().values(), names)),
+            "Tests": TESTS,
+        },
+        "cells": {"B3": "5", "B4": "text", "C5": "=1/0"},
+        "run": ["Product.AX_ABOUT", *(f"Tests.{name}" for name in PROCEDURES)],
+    }
+    run = command(office, profile, empty, f"--accept=pipe,name={pipe};urp;")
+    process = subprocess.Popen(run, stdout=subprocess.DEVNULL, stderr=subprocess.DEVNULL, env=environment())
+    try:
+        done = subprocess.run(
+            [python, str(HERE / "basic_session.py")],
+            input=json.dumps(job),
+            capture_output=True,
+            text=True,
+            timeout=300,
+            check=False,
+            env=environment(),
+        )
+    finally:
+        try:
+            process.wait(60)
+        except subprocess.TimeoutExpired:
+            process.kill()
+    assert done.returncode == 0, done.stderr
+    return json.loads(done.stdout)
+
+
+EXPECTED = {
+    # Types of VBA: 5 Double, 8 String, 11 Boolean; an error value tells no more than that.
+    "BlockOfAnswers": "5:1.5 error 8:#N/A 11:True",
+    "RowOfAnswers": "5:2015 error error 8:text",
+    "TakenBlock": "3,2,0,Sheet1 3x2 5:5",
+    "TakenColumns": "1,2,1,Sheet1 5x2 0:",
+    "TakenRows": "3,1,2,Sheet1 2x3 0:",
+    "TakenTallWithAnEnd": "1,2,0,Sheet1 5000x1 0:",
+    "TakenColumnsBesideTheUsed": "1,8,1,Sheet1 5x1 0:",
+    "TakenCell": "3,2,0,Sheet1 5:5",
+    "TakenText": " 8:kN",
+    "Called": "here.AX_GRID [3x2]  T1 3,2,0,Sheet1;-;; / starts 1",
+    "CalledWithNoArguments": "here.AX_CLOCK ",
+    "CalledAgainAfterTheProcessEnded": "8:here.AX_GRID 5   3,2,0,Sheet1;-;-; / starts 1",
+    "NotStarted": "error / starts 1 / xlaxial does not run: no such Python - run 'xlaxial excel check' in a terminal",
+}
+
+
+@pytest.mark.parametrize("name", EXPECTED)
+def test_vba_does_what_it_should(told, name):
+    assert EXPECTED[name] == told[f"Tests.{name}"]
+
+
+def test_the_module_of_all_functions_compiles_and_runs(told):
+    assert told["Product.AX_ABOUT"] == "here.AX_ABOUT "
+
+
+def test_every_procedure_of_the_tests_is_looked_at():
+    assert set(EXPECTED) == set(PROCEDURES)
