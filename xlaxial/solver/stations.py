@@ -21,7 +21,24 @@ class Stations:
 def at_stations(
     network: Network, actions: Actions, state: LinearState, preload: Floats, bar: Ints, x: Floats, case: int = 0
 ) -> Stations:
-    """Return results at (n,) places: the bar and the distance x (m) from its start of each."""
+    """Return results at places along bars.
+
+    N(x) = N_start - q x and u(x) = u_start + int_0^x N/(E A) + (imposed + preload) x/L, the free lengthening of a bar
+    being even along it.
+
+    Parameters
+    ----------
+    network, actions, preload
+        As for `xlaxial.solver.displacement.solve_linear`.
+    state : LinearState
+        Its solution.
+    bar : Ints
+        (n,) bar of each place.
+    x : Floats
+        (n,) m from the bar's start.
+    case : int
+        Load case.
+    """
     some = some_bars(network.bars, bar)
     area = area_at(some, x)
     first, second = integrals(some, x, area)
