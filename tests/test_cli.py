@@ -170,6 +170,17 @@ def test_a_fault_of_the_program_is_never_written(
     assert filled.read_bytes() == before
 
 
+def test_a_fault_of_the_host_is_no_difference(
+    filled: Path, capsys: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    def broken(*_: object) -> None:
+        raise RuntimeError("broken")
+
+    monkeypatch.setattr("xlaxial.hosts.headless.recalculate.read_book", broken)
+    assert main(["verify", str(filled)]) == 2
+    assert capsys.readouterr().err == "ties.xlsx: a fault of xlaxial, please report it: RuntimeError: broken\n"
+
+
 @pytest.fixture
 def report(filled: Path, tmp_path: Path) -> Callable[[str], str]:
     """Return a maker of reports on a workbook with one value that differs, one that does not, and a file that fails."""

@@ -197,6 +197,14 @@ def test_a_lock_file_is_respected(odd_zip: Path) -> None:
     assert odd_zip.read_bytes() == original
 
 
+def test_a_read_only_file_is_kept(odd_zip: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    original = odd_zip.read_bytes()
+    monkeypatch.setattr(os, "access", lambda path, mode: mode != os.W_OK)  # whoever may do anything is never refused
+    with pytest.raises(WorkbookError, match=r"odd\.xlsx: is read-only; write to another file with --output"):
+        write_values(odd_zip, {"xl/worksheets/sheet1.xml": {(2, 1): 6.0}}, odd_zip)
+    assert odd_zip.read_bytes() == original
+
+
 def test_a_missing_folder_is_named(odd_zip: Path, tmp_path: Path) -> None:
     with pytest.raises(WorkbookError, match="cannot be written"):
         write_values(odd_zip, {"xl/worksheets/sheet1.xml": {(2, 1): 6.0}}, tmp_path / "none" / "out.xlsx")

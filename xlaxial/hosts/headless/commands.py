@@ -18,6 +18,7 @@ from xlaxial.hosts.headless.report import lines, write_report
 
 LAST_DIGITS = 1e-14
 """Relative difference below which recalc keeps a stored number: spreadsheets store 15 to 17 digits."""
+_FAULT = "{}: a fault of xlaxial, please report it: {}"
 LISTED = 50
 """Cells of a kind that are listed on a terminal; a report lists all."""
 HOLDS, DIFFERS, FAILED, UNSURE = 0, 1, 2, 3
@@ -86,11 +87,15 @@ def _recalculated(book: Path, shown: str, rtol: float, *, volatile: bool = False
     try:
         with _working(shown):
             done = recalculate(book, rtol=rtol, volatile=volatile)
+    except WorkbookError:
+        raise
+    except Exception as fault:  # one line and exit code 2, not a traceback and the code of a difference
+        raise WorkbookError(_FAULT.format(book.name, f"{type(fault).__name__}: {fault}")[:500]) from fault
     finally:
         log.removeHandler(faults)
         log.propagate = propagate
     if faults.lines:
-        raise WorkbookError(f"{book.name}: a fault of xlaxial, please report it: {'; '.join(faults.lines)}"[:500])
+        raise WorkbookError(_FAULT.format(book.name, "; ".join(faults.lines))[:500])
     return done
 
 

@@ -14,7 +14,7 @@ from xlaxial.hosts.headless.workbook import Book
 
 SAME, DIFFERENT, NOT_STORED, FROZEN = "same", "different", "no stored value", "not recalculated"
 RTOL = 1e-9
-_LONG_NUMBER = re.compile(r"(?<![\w.])(?=[\d.]{17})\d{1,15}\.\d+(?![\d.])")
+_LONG_NUMBER = re.compile(r"(?<![\d.])(?=[\d.]{17})\d{1,15}\.\d+(?![\d.])")
 _TINY = 1e-12  # what is left of a difference that is 0
 _NOISE = 1e-15  # numbers below this differ by rounding only
 

@@ -231,6 +231,8 @@ def write_values(
     lock = output.with_name("~$" + output.name)
     if lock.exists():
         raise WorkbookError(f"{output.name}: is open in a spreadsheet program; close it first")
+    if output.exists() and not os.access(output, os.W_OK):
+        raise WorkbookError(f"{output.name}: is read-only; write to another file with --output")
     with open_package(path) as package:
         new = {
             part: patched(read_part(package, part), cells, (areas or {}).get(part))
