@@ -210,3 +210,88 @@ def test_the_comparison_can_fail() -> None:
     assert not same(CellError("#N/A"), CellError("#VALUE!"))
     assert not same("ok", "")
     assert same(None, "")
+
+
+HEATED = [
+    ["Mark", "Length (mm)", "Area (mm2)", "E (GPa)", "Alpha (1e-6/K)", "dT (K)"],
+    ["S1", 540, 1100, 70, 23, 30],
+    ["S1", 820, 640, 205, 12, 30],
+    ["S1", 370, 900, 110, 18, 30],
+]
+CHAIN_ENDS = [["Mark", "Node", "Stiffness (kN/mm)"], ["S1", 0, 70], ["S1", 3, 150]]
+
+
+def heated_chain(path: Path, rows: list[list[Any]], ends: list[list[Any]], force: str = "Force (kN)") -> Path:
+    """The agreed example of a heated chain between springs, in a workbook."""
+    book = Workbook()
+    sheet = book.active
+    for first, table in ((1, rows), (8, ends)):
+        for i, row in enumerate(table):
+            for j, value in enumerate(row):
+                cell = sheet.cell(1 + i, first + j, value)
+                if value == "#N/A":
+                    cell.data_type = "e"
+    n = len(rows)
+    tables = f"A1:F{n},H1:J{len(ends)},"
+    for j, heading in enumerate((force, "Stress (MPa)", "Displacement start (mm)", "Displacement end (mm)", "Status")):
+        sheet.cell(1, 12 + j, heading)
+    sheet["L2"] = ArrayFormula(f"L2:P{n}", f"=AX_SEGMENTS({tables},L1:P1)")
+    sheet["R2"] = ArrayFormula(f"R2:R{len(ends)}", f'=AX_REACTIONS({tables},"kN")')
+    sheet["T1"] = f"=MAX(L2:L{n})"
+    sheet["T2"] = f"=_xlfn.AGGREGATE(14,6,L2:L{n},1)"
+    sheet["T3"] = f"=MIN(L2:L{n})"
+    book.save(path)
+    return path
+
+
+@pytest.fixture(params=["headless", "Excel over stubs", "Calc"])
+def host(request: pytest.FixtureRequest, extensions: Path) -> Any:
+    """Each host, as a function from a workbook to its cells."""
+    if request.param == "headless":
+        return lambda book: {(r.sheet, r.cell): r.new for r in recalculate(book).results}
+    return over_stubs if request.param == "Excel over stubs" else lambda book: in_calc(book, extensions)
+
+
+def cells(values: dict[tuple[str, str], Any], *names: str) -> list[Any]:
+    return [values["Sheet", name] for name in names]
+
+
+def digits(*values: float) -> list[Any]:
+    return [pytest.approx(value, abs=0.51e-6) for value in values]
+
+
+@pytest.mark.parametrize("unit", ["K", "°F"])
+def test_a_heated_chain_between_springs(host: Any, tmp_path: Path, unit: str) -> None:
+    """Example 2a, in kelvins and in degrees Fahrenheit."""
+    rows = [[*HEATED[0][:5], f"dT ({unit})"], *([*row[:5], 30 if unit == "K" else 54] for row in HEATED[1:])]
+    found = host(heated_chain(tmp_path / "chain.xlsx", rows, CHAIN_ENDS))
+    assert cells(found, "L2", "L3", "L4") == digits(-22.860009, -22.860009, -22.860009)
+    assert cells(found, "M2", "M3", "M4") == digits(-20.781826, -35.718763, -25.400010)
+    assert cells(found, "N2", "O4") == digits(-0.326572, 0.152400)
+    assert cells(found, "R2", "R3") == digits(22.860009, -22.860009)
+
+
+def test_edits_are_seen(host: Any, tmp_path: Path) -> None:
+    """Example 2b: another temperature, another unit in the result's heading, rigid ends."""
+    hotter = [HEATED[0], *([*row[:5], 31] for row in HEATED[1:])]
+    assert cells(host(heated_chain(tmp_path / "a.xlsx", hotter, CHAIN_ENDS)), "L2") == digits(-23.622009)
+    assert cells(host(heated_chain(tmp_path / "b.xlsx", HEATED, CHAIN_ENDS, "Force (lbf)")), "L2") == digits(
+        -5139.134362
+    )
+    rigid = [CHAIN_ENDS[0], *([*row[:2], None] for row in CHAIN_ENDS[1:])]
+    found = host(heated_chain(tmp_path / "c.xlsx", HEATED, rigid))
+    assert cells(found, "L2") == digits(-51.034211)
+    assert "rigid" in found["Sheet", "P2"]
+
+
+@pytest.mark.parametrize("wrong", ["TBC", "#N/A"])
+def test_a_wrong_member_fails_alone_and_no_summary_passes_over_it(host: Any, tmp_path: Path, wrong: str) -> None:
+    """Example 2c."""
+    rows = [*HEATED, ["S2", 540, 1100, 70, 23, 30], ["S2", wrong, 640, 205, 12, 30]]
+    found = host(heated_chain(tmp_path / "chain.xlsx", rows, [*CHAIN_ENDS, ["S2", 0, 70], ["S2", 2, 150]]))
+    assert cells(found, "L2", "L3", "L4") == digits(-22.860009, -22.860009, -22.860009)
+    assert cells(found, "L5", "L6", "R4", "R5") == [CellError("#VALUE!")] * 4
+    assert isinstance(found["Sheet", "T1"], CellError)
+    assert isinstance(found["Sheet", "T3"], CellError)
+    assert cells(found, "T2") == digits(-22.860009)
+    assert "B6" in found["Sheet", "P5"] and "B6" in found["Sheet", "P6"]
