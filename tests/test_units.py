@@ -70,6 +70,28 @@ def test_another_dimension_is_named() -> None:
         unit("kN", "length")
 
 
+@pytest.mark.parametrize(
+    ("text", "dimension"),
+    [
+        ("103 kN", "force"), ("100 mm", "length"), ("x100 mm", "length"), ("x 103 mm", "length"), ("× 1012 mm", "length"), ("x 106 N", "force"),
+        ("mm/", "length"), ("kN()", "force"), ("N/(mm)mm", "stress"), ("deg", "ratio"), ("rad·mm", "length"), ("'600\"", "length"),
+    ],
+)  # fmt: skip
+def test_sizes_counts_and_loose_grammar_are_no_units(text: str, dimension: str) -> None:
+    with pytest.raises(UnitError):
+        unit(text, dimension)
+
+
+def test_degrees_apart_from_their_scale_are_temperatures() -> None:
+    assert [unit(text, "temperature difference").factor for text in ("deg C", "deg. F", "° C", "degC")] == [
+        1.0,
+        5 / 9,
+        1.0,
+        1.0,
+    ]
+    assert unit("10³ kN", "force").factor == unit("10^3 kN", "force").factor == 1e6
+
+
 @pytest.mark.parametrize("dimension", DIMENSIONS)
 def test_the_examples_in_the_remedies_work(dimension: str) -> None:
     for example in DIMENSIONS[dimension].examples:

@@ -104,8 +104,11 @@ _REFUSED = {
     "M": "write MPa, MN or m",
 }
 _TOKEN = re.compile(r"\s*(?:([A-Za-zε°%‰\"']+)\s*(?:\^|\*\*)?(-?\d+)?|([*/() ])|(-)(?=\s*[A-Za-z]))")
+_RAISED = re.compile("[⁺⁻]?[⁰¹²³⁴⁵⁶⁷⁸⁹]+")
+# a power of ten is marked as one, by a caret, a superscript or its sign: 103 kN is no unit, 10^3 kN is
 _POWER_OF_TEN = re.compile(
-    r"^\s*[x×*]?\s*(?:10\s*(?:\^|\*\*)?\s*\(?(-?\d{1,2})\)?|1(?:\.0*)?[eE]([+-]?\d{1,2}))(?=\s*[*/A-Za-z°]|$)\s*\*?\s*"
+    r"^\s*[x×*]?\s*(?:10\s*(?:(?:\^|\*\*)\s*\(?(-?\d{1,2})\)?|(-\d{1,2}))|1(?:\.0*)?[eE]([+-]?\d{1,2}))"
+    r"(?=\s*[*/A-Za-z°]|$)\s*\*?\s*"
 )
 
 
@@ -121,6 +124,7 @@ def _registry() -> Any:
 
 def _plain(text: str) -> str:
     """Text of a unit in few characters: superscripts, dots, minus signs and quotes made alike."""
+    text = _RAISED.sub(lambda found: "^" + unicodedata.normalize("NFKC", found[0]), text)
     text = unicodedata.normalize("NFKC", text).strip()
     for old, new in (
         ("−", "-"), ("–", "-"), ("·", "*"), ("⋅", "*"), ("∙", "*"), ("•", "*"), ("×", "*"), ("μ", "u"), ("µ", "u"),
@@ -128,7 +132,7 @@ def _plain(text: str) -> str:
     ):  # fmt: skip
         text = text.replace(old, new)
     text = re.sub(r"^\(-\)$", "-", text)
-    text = re.sub(r"°\s+([CFK])", r"°\1", text)
+    text = re.sub(r"(?:°\s+|\bdeg\.?\s+)([CFK])\b", r"°\1", text)
     text = text[:-1] if text.endswith(("in.", "ft.")) else text
     return re.sub(r"\b(?:sq\.?|square)\s*(mm|cm|m|in|ft)\b\.?", r"\g<1>2", text)
 
@@ -143,13 +147,13 @@ def unit_factors(text: str) -> tuple[Fraction, list[tuple[str, int]], list[tuple
     scale = Fraction(1)
     power = _POWER_OF_TEN.match(rest)
     if power:
-        scale = Fraction(10) ** int(power[1] or power[2])
+        scale = Fraction(10) ** int(power[1] or power[2] or power[3])
         rest = rest[power.end() :]
     elif re.match(r"1\s*/", rest):
         rest = rest[1:]
     above: list[tuple[str, int]] = []
     below: list[tuple[str, int]] = []
-    divided, bracket, at = False, False, 0
+    divided, bracket, closed, due, at = False, False, False, False, 0  # due: a unit must follow
     slashes = 0
     while at < len(rest):
         found = _TOKEN.match(rest, at)
@@ -157,12 +161,14 @@ def unit_factors(text: str) -> tuple[Fraction, list[tuple[str, int]], list[tuple
             return None
         at = found.end()
         name, exponent, mark = found[1], found[2], found[3]
+        if mark == " ":
+            continue
+        if closed:
+            return None
         if name:
             number = int(exponent) if exponent else 1
-            if not 0 < abs(number) <= _POWER:
-                return None
             parts = _COMPOUND.get(name, (name,))
-            if len(parts) > 1 and exponent:
+            if not 0 < abs(number) <= _POWER or (len(parts) > 1 and exponent):
                 return None
             (below if divided else above).extend((part, number) for part in parts)
         elif mark == "/":
@@ -172,10 +178,11 @@ def unit_factors(text: str) -> tuple[Fraction, list[tuple[str, int]], list[tuple
                 return None
             bracket = True
         elif mark == ")":
-            if not bracket:
+            if due or not bracket:
                 return None
-            bracket = False
-    if bracket or slashes > 2 or not (above or below):
+            bracket, closed = False, True
+        due = mark is not None and mark in "/(*"
+    if bracket or due or slashes > 2 or not (above or below):
         return None
     return scale, above, below
 
@@ -229,9 +236,7 @@ def _confused(dimension: str, factors: list[tuple[str, int]]) -> bool:
     """Whether a unit without dimension stands for another kind: an angle is no strain."""
     names = {name for name, _ in factors}
     angles = {"deg", "rad", "°"}
-    if dimension == "angle":
-        return not names <= angles
-    return dimension in ("strain", "ratio") and bool(names & angles)
+    return not names <= angles if dimension == "angle" else bool(names & angles)
 
 
 def _dimension_of(dimensionality: Any) -> str:

@@ -53,3 +53,8 @@ def test_any_text_is_a_number_or_an_error(text: str) -> None:
         assert refused.problem.remedy
     else:
         assert abs(number) < float("inf")
+
+
+def test_feet_and_inches_are_never_thousands() -> None:
+    assert parse_number("5'600\"") == (5.0, "'600\"")  # which is no unit
+    assert parse_number("100x100 mm") == (100.0, "x100 mm")  # neither is that

@@ -7,7 +7,7 @@ import re
 from xlaxial.problems import AxialError, Problem
 
 _SPACES = "\u00a0\u2009\u202f\u2007 "
-_LEADING = re.compile(r"([+-]?)([0-9.,'" + _SPACES + r"]*[0-9][.,]?)((?:[eE][+-]?[0-9]{1,3})?)(?![0-9.,/])")
+_LEADING = re.compile(r"([+-]?)([0-9.," + _SPACES + r"]*[0-9][.,]?)((?:[eE][+-]?[0-9]{1,3})?)(?![0-9.,/])")
 _FRACTION = re.compile(r"^[+-]?\d+(?:\s+\d+)?\s*[/⁄]\s*\d+")
 
 
@@ -44,7 +44,7 @@ def parse_number(text: str, decimal_mark: str = ".") -> tuple[float, str | None]
         raise AxialError(Problem(f"{shown!r} is not a number", "write a number"))
     sign, digits, exponent = found.groups()
     rest = plain[found.end() :].strip()
-    if rest and (rest[0] in "_'" or rest[0].isdigit()):
+    if rest and (rest[0] == "_" or rest[0].isdigit()):
         raise AxialError(Problem(f"{shown!r} is not a number", "write a number"))
     number = float(sign + _digits(digits.rstrip(_SPACES), decimal_mark, shown) + exponent)
     if number in (float("inf"), float("-inf")):
@@ -55,7 +55,7 @@ def parse_number(text: str, decimal_mark: str = ".") -> tuple[float, str | None]
 def _digits(digits: str, mark: str, shown: str) -> str:
     """Return digits with a decimal point and nothing else."""
     group = "," if mark == "." else "."
-    spaces = "[" + _SPACES + "']"
+    spaces = "[" + _SPACES + "]"
     whole, _, part = digits.partition(mark)
     if mark in part or group in part or re.search(spaces, part):
         raise AxialError(Problem(f"{shown!r} is not a number", "write it with one decimal mark"))
