@@ -5,6 +5,7 @@ from dataclasses import replace
 from pathlib import Path
 
 import pytest
+
 from xlaxial import __version__
 from xlaxial.functions.registry import load
 from xlaxial.hosts.excel import commands
@@ -57,7 +58,7 @@ def addin(machine):
 
 
 def test_install_puts_the_add_in_where_excel_opens_it(machine, tmp_path, capsys):
-    assert commands.DONE == commands.install(machine=machine)
+    assert commands.install(machine=machine) == commands.DONE
     assert tmp_path / "Roaming" / "Microsoft" / "Excel" / "XLSTART" / "xlaxial.xlam" == addin(machine)
     module, settings = read_addin(addin(machine))
     assert str(tmp_path / "venv" / "Scripts" / "pythonw.exe") == settings.python
@@ -71,9 +72,9 @@ def test_install_puts_the_add_in_where_excel_opens_it(machine, tmp_path, capsys)
 
 
 def test_install_again_over_an_older_one(machine):
-    assert commands.DONE == commands.install(machine=machine)
+    assert commands.install(machine=machine) == commands.DONE
     first = addin(machine).read_bytes()
-    assert commands.DONE == commands.install(machine=machine)
+    assert commands.install(machine=machine) == commands.DONE
     assert first == addin(machine).read_bytes()
 
 
@@ -82,26 +83,26 @@ def test_a_locked_add_in_is_told(machine, monkeypatch, capsys):
         raise PermissionError(13, "in use")
 
     monkeypatch.setattr(Path, "replace", locked)
-    assert commands.WRONG == commands.install(machine=machine)
+    assert commands.install(machine=machine) == commands.WRONG
     assert "close Excel" in capsys.readouterr().err
-    assert [] == list(machine.startup_folder().iterdir())
+    assert list(machine.startup_folder().iterdir()) == []
 
 
 def test_install_without_the_library(machine, capsys):
-    assert commands.WRONG == commands.install(machine=replace(machine, libraries=()))
+    assert commands.install(machine=replace(machine, libraries=())) == commands.WRONG
     assert f"xlwings64-{XLWINGS}.dll is not installed" in capsys.readouterr().err
 
 
 def test_remove(machine, capsys):
-    assert commands.DONE == commands.remove(machine)
+    assert commands.remove(machine) == commands.DONE
     assert "not installed" in capsys.readouterr().out
     commands.install(machine=machine)
-    assert commands.DONE == commands.remove(machine)
+    assert commands.remove(machine) == commands.DONE
     assert not addin(machine).exists()
 
 
 def test_check_before_install(machine, capsys):
-    assert commands.WRONG == commands.check(machine)
+    assert commands.check(machine) == commands.WRONG
     assert "run 'xlaxial excel install'" in capsys.readouterr().err
 
 
@@ -111,7 +112,7 @@ def installed_then(machine, capsys, change):
     capsys.readouterr()
     code = commands.check(change(machine) or machine)
     wrong = capsys.readouterr().err
-    assert commands.WRONG == code, wrong
+    assert code == commands.WRONG, wrong
     return wrong
 
 
@@ -133,8 +134,8 @@ def test_a_policy_wins_over_the_own_setting(machine, registry, capsys):
     commands.install(machine=machine)
     registry["HKCU", SECURITY, "DisableAllAddins"] = 1
     registry["HKCU", POLICY, "DisableAllAddins"] = 0
-    assert commands.DONE == commands.check(machine)
-    assert "" == capsys.readouterr().err
+    assert commands.check(machine) == commands.DONE
+    assert capsys.readouterr().err == ""
 
 
 def test_office_of_the_store(machine, registry, tmp_path, capsys):
@@ -148,7 +149,7 @@ def test_office_of_the_store(machine, registry, tmp_path, capsys):
 def test_no_excel(machine, registry, capsys):
     commands.install(machine=machine)
     registry.clear()
-    assert commands.NO_EXCEL == commands.check(machine)
+    assert commands.check(machine) == commands.FAILED
     assert "Excel is not found" in capsys.readouterr().err
 
 
@@ -157,7 +158,7 @@ def test_a_missing_library_is_told_for_the_bits_of_excel_only(machine, capsys):
     assert f"{large} is not there" in installed_then(machine, capsys, lambda _: large.unlink())
     large.touch()
     small.unlink()
-    assert commands.DONE == commands.check(machine)
+    assert commands.check(machine) == commands.DONE
 
 
 def test_excel_of_32_bits_wants_its_own_library(machine, tmp_path, capsys):
@@ -170,7 +171,7 @@ def test_a_stale_add_in_after_an_upgrade(machine, monkeypatch, capsys):
     commands.install(machine=machine)
     capsys.readouterr()
     monkeypatch.setattr(commands, "__version__", "99.0")
-    assert commands.WRONG == commands.check(machine)
+    assert commands.check(machine) == commands.WRONG
     assert "made by another version" in capsys.readouterr().err
 
 
@@ -178,7 +179,7 @@ def test_an_add_in_that_lacks_a_function(machine, monkeypatch, capsys):
     commands.install(machine=machine)
     capsys.readouterr()
     monkeypatch.setattr(commands, "load", lambda: dict(list(load().items())[:-1]))
-    assert commands.WRONG == commands.check(machine)
+    assert commands.check(machine) == commands.WRONG
     assert "made by another version" in capsys.readouterr().err
 
 
@@ -208,20 +209,20 @@ def elsewhere():
 
 def test_other_systems_are_told_what_can_be_done_there(capsys):
     for command in (commands.install, commands.check):
-        assert commands.NO_EXCEL == command(machine=elsewhere())
+        assert command(machine=elsewhere()) == commands.FAILED
         assert "--to FILE.xlam" in capsys.readouterr().out
-    assert commands.NO_EXCEL == commands.remove(elsewhere())
+    assert commands.remove(elsewhere()) == commands.FAILED
 
 
 def test_other_systems_can_write_the_add_in(tmp_path, capsys):
     python = r"C:\Tools\venv\Scripts\pythonw.exe"
     target = tmp_path / "there.xlam"
-    assert commands.DONE == commands.install(target, python, elsewhere())
+    assert commands.install(target, python, elsewhere()) == commands.DONE
     _, settings = read_addin(target)
     assert (python, r"C:\Tools\venv") == (settings.python, settings.library_folder)
-    assert commands.DONE == commands.install(target, machine=elsewhere())
+    assert commands.install(target, machine=elsewhere()) == commands.DONE
     assert "give it with --python" in capsys.readouterr().out
-    assert commands.WRONG == commands.install(tmp_path / "no folder" / "x.xlam", machine=elsewhere())
+    assert commands.install(tmp_path / "no folder" / "x.xlam", machine=elsewhere()) == commands.WRONG
 
 
 def test_without_olefile_the_remedy_is_told(machine, monkeypatch, capsys):
@@ -229,25 +230,25 @@ def test_without_olefile_the_remedy_is_told(machine, monkeypatch, capsys):
         raise ModuleNotFoundError("No module named 'olefile'", name="olefile")
 
     monkeypatch.setattr(commands, "read_template", missing)
-    assert commands.WRONG == commands.install(machine=machine)
+    assert commands.install(machine=machine) == commands.WRONG
     assert "pip install olefile" in capsys.readouterr().err
 
 
 def test_where_the_library_stands_beside_an_interpreter():
-    assert r"C:\Py" == library_folder_of(r"C:\Py\pythonw.exe")
-    assert r"C:\Py\env" == library_folder_of(r"C:\Py\env\Scripts\pythonw.exe")
+    assert library_folder_of(r"C:\Py\pythonw.exe") == r"C:\Py"
+    assert library_folder_of(r"C:\Py\env\Scripts\pythonw.exe") == r"C:\Py\env"
 
 
 @pytest.mark.parametrize("content", [b"", b"MZ", b"MZ" + bytes(70), b"text " * 40])
 def test_what_is_no_program_tells_no_bits(tmp_path, content):
     path = tmp_path / "x.exe"
     path.write_bytes(content)
-    assert 0 == program_bits(path)
+    assert program_bits(path) == 0
 
 
 def test_this_machine_runs_commands():
     machine = this_machine()
-    assert (0, "here\n") == machine.run([str(machine.python), "-c", "print('here')"])
+    assert machine.run([str(machine.python), "-c", "print('here')"]) == (0, "here\n")
     code, said = machine.run(["/no/such/program"])
     assert code == -1
     assert said

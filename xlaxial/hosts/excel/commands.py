@@ -1,11 +1,12 @@
-"""The commands ``xlaxial excel install``, ``remove`` and ``check``."""
+"""The commands ``xlaxial excel install``, ``remove`` and ``check``, and ``xlaxial links``."""
 
 from __future__ import annotations
 
 import os
 import sys
 import tempfile
-from collections.abc import Callable
+from collections import Counter
+from collections.abc import Callable, Collection
 from functools import wraps
 from pathlib import Path
 from typing import ParamSpec
@@ -21,6 +22,7 @@ from xlaxial.hosts.excel.addin import (
     read_addin,
     read_template,
 )
+from xlaxial.hosts.excel.links import TYPES, Workbook, moved, plain, read_links, rewrite
 from xlaxial.hosts.excel.machine import (
     Excel,
     Machine,
@@ -32,9 +34,11 @@ from xlaxial.hosts.excel.machine import (
     this_machine,
 )
 from xlaxial.hosts.excel.vba import module_text
+from xlaxial.hosts.headless.errors import WorkbookError
+from xlaxial.hosts.headless.package import open_package
 
-DONE, WRONG, NO_EXCEL = 0, 1, 2
-"""Exit codes: done, something has to be mended, no Excel that could be used."""
+DONE, WRONG, FAILED = 0, 1, 2
+"""Exit codes: done, something has to be mended, could not be done (no Excel, no workbook)."""
 
 _PROBE = (
     "import sys; sys.path = [p for p in sys.path if p]; import win32com.client, xlaxial, xlwings; "
@@ -92,7 +96,7 @@ def install(to: Path | None = None, python: str | None = None, machine: Machine 
     folder = machine.startup_folder()
     if to is None and folder is None:
         print(_ELSEWHERE)
-        return NO_EXCEL
+        return FAILED
     template = read_template()
     try:
         settings = _settings(machine, template, python)
@@ -153,7 +157,7 @@ def remove(machine: Machine | None = None) -> int:
     folder = machine.startup_folder()
     if folder is None:
         print("Excel for Windows is not on this machine: nothing to remove")
-        return NO_EXCEL
+        return FAILED
     target = folder / FILE_NAME
     if not target.exists():
         print("the add-in is not installed")
@@ -174,11 +178,11 @@ def check(machine: Machine | None = None) -> int:
     folder = machine.startup_folder()
     if folder is None:
         print(_ELSEWHERE)
-        return NO_EXCEL
+        return FAILED
     excel = find_excel(machine)
     if excel is None:
         print("Excel is not found", file=sys.stderr)
-        return NO_EXCEL
+        return FAILED
     bits = f", {excel.bits} bit" if excel.bits else ""
     print(f"Excel {excel.version or '(version not told)'}{bits}: {excel.program}")
     template = read_template()
@@ -243,3 +247,68 @@ def _of_python(machine: Machine, settings: Settings) -> list[str]:
     if versions != [settings.version, settings.xlwings]:
         return ["the add-in was made for other versions than those in its Python; run 'xlaxial excel install'"]
     return []
+
+
+def links(book: Path, to_plain: bool = False, to: str | None = None, functions: Collection[str] | None = None) -> int:
+    """Tell, remove or mend the add-in's path in a workbook's formulas.
+
+    Parameters
+    ----------
+    book : pathlib.Path
+        The workbook; changed in its place, with a backup beside it.
+    to_plain : bool, optional
+        Make the calls plain.
+    to : str, optional
+        Path of the add-in to which the links are to lead.
+    functions : collection of str, optional
+        Names of our functions; those of the registry where left out.
+
+    Returns
+    -------
+    int
+        Exit code: 0 nothing to mend (any more), 1 something to mend (only looked at), 2 could not.
+    """
+    names = {name.upper() for name in (load() if functions is None else functions)}
+    try:
+        with open_package(book) as package:
+            found = read_links(package, names)
+            _tell(found)
+            if not to_plain and to is None:
+                return WRONG if found.calls or found.ours() else DONE
+            dropped: set[str] = set()
+            if to is None:
+                changed, dropped = plain(package, found)
+            else:
+                changed = moved(package, found, to)
+            if not changed:
+                print(f"{book.name}: nothing to change")
+                return DONE
+            rewrite(book, package, changed, dropped)
+            print(
+                f"{book.name}: {_count(len(changed) - (TYPES in changed), 'part')} changed; a backup stands beside it"
+            )
+            kept = found.ours() - {n for n in found.ours() if found.links[n - 1].part in dropped}
+            if to is None and kept:
+                print(
+                    "a link to the add-in is kept, since something else needs it or what follows it: "
+                    + ", ".join(found.links[n - 1].target for n in sorted(kept))
+                )
+    except WorkbookError as wrong:
+        text = str(wrong)
+        print(text if text.startswith(book.name) else f"{book.name}: {text}", file=sys.stderr)
+        return FAILED
+    return DONE
+
+
+def _count(number: int, what: str) -> str:
+    return f"{number} {what}" + ("" if number == 1 else "s")
+
+
+def _tell(found: Workbook) -> None:
+    forms = Counter(call.prefix for calls in found.calls.values() for call in calls)
+    for prefix, number in sorted(forms.items()):
+        print(f"{_count(number, 'call')} written {prefix}AX_...")
+    for number in sorted(found.ours()):
+        print(f"link {number} leads to {found.links[number - 1].target or 'nowhere'}")
+    if not forms and not found.ours():
+        print("all calls are plain")
