@@ -70,6 +70,10 @@ Function TakenText()
     TakenText = Taken("kN")
 End Function
 
+Function Command()
+    Command = axCommand()
+End Function
+
 Function Called()
     Started = 0
     Refuse = False

@@ -34,6 +34,7 @@ FUNCTIONS = (
     Function("AX_CLOCK", "Clock.", (), "", "here:x", ""),
     Function("AX_ABOUT", "About.", (), "", "here:x", ""),
 )
+PYTHON = r"C:\A folder\Scripts\pythonw.exe"
 TESTS = (HERE / "basic_tests.bas").read_text(encoding="ascii")
 PROCEDURES = re.findall(r"^Function (\w+)\(\)", TESTS, re.MULTILINE)
 HEAD = "Rem Attribute VBA_ModuleType=VBAModule\nOption VBASupport 1\n"
@@ -66,7 +67,7 @@ def as_basic(text: str) -> str:
     text = re.sub(r"^Attribute .*\n", "", text, flags=re.MULTILINE)
     text = re.sub(r"#If.*?#Else\n(.*?)#End If\n", r"\1", text, flags=re.DOTALL)
     text = re.sub(r"^Private Declare .*\n", "", text, flags=re.MULTILINE)
-    text = re.sub(r"^Private (Function|Sub) (ax(?:Answer|Take))\b", r"Public \1 \2", text, flags=re.MULTILINE)
+    text = re.sub(r"^Private (Function|Sub) (ax(?:Answer|Take|Command))\b", r"Public \1 \2", text, flags=re.MULTILINE)
     return HEAD + text.replace("\nPrivate axKept", LIBRARY + "\nPrivate axKept", 1)
 
 
@@ -90,7 +91,7 @@ def told(tmp_path_factory):
             "Product": as_basic(module_text(load().values(), names)),
             "Tests": TESTS,
         },
-        "cells": {"B3": "5", "B4": "text", "C5": "=1/0"},
+        "cells": {"B1": PYTHON, "B2": r"C:\A folder", "B3": "5", "B4": "text", "C5": "=1/0"},
         "run": ["Product.AX_ABOUT", *(f"Tests.{name}" for name in PROCEDURES)],
     }
     run = command(office, profile, empty, f"--accept=pipe,name={pipe};urp;")
@@ -119,15 +120,17 @@ EXPECTED = {
     "BlockOfAnswers": "5:1.5 error 8:#N/A 11:True",
     "RowOfAnswers": "5:2015 error error 8:text",
     "TakenBlock": "3,2,0,Sheet1 3x2 5:5",
-    "TakenColumns": "1,2,1,Sheet1 5x2 0:",
+    "TakenColumns": f"1,2,1,Sheet1 5x2 8:{PYTHON}",
     "TakenRows": "3,1,2,Sheet1 2x3 0:",
-    "TakenTallWithAnEnd": "1,2,0,Sheet1 5000x1 0:",
+    "TakenTallWithAnEnd": f"1,2,0,Sheet1 5000x1 8:{PYTHON}",
     "TakenColumnsBesideTheUsed": "1,8,1,Sheet1 5x1 0:",
     "TakenCell": "3,2,0,Sheet1 5:5",
     "TakenText": " 8:kN",
     "Called": "here.AX_GRID [3x2]  T1 3,2,0,Sheet1;-;; / starts 1",
     "CalledWithNoArguments": "here.AX_CLOCK ",
     "CalledAgainAfterTheProcessEnded": "8:here.AX_GRID 5   3,2,0,Sheet1;-;-; / starts 1",
+    "Command": f'"{PYTHON}" -B -c "import sys; sys.path = [p for p in sys.path if p]; '
+    "from xlaxial.hosts.excel.server import run; run('$(CLSID)')\"",
     "NotStarted": "error / starts 1 / xlaxial does not run: no such Python - run 'xlaxial excel check' in a terminal",
 }
 
@@ -135,6 +138,23 @@ EXPECTED = {
 @pytest.mark.parametrize("name", EXPECTED)
 def test_vba_does_what_it_should(told, name):
     assert EXPECTED[name] == told[f"Tests.{name}"]
+
+
+def test_the_command_starts_the_server(told, tmp_path):
+    """What Excel would run, with this Python and a stand-in for xlwings' server."""
+    code = re.fullmatch(r'"[^"]*" -B -c "([^"]*)"', told["Tests.Command"])
+    assert code is not None
+    (tmp_path / "numpy.py").write_text("raise RuntimeError('a file of the working folder was loaded')")
+    stand_in = "import xlwings; xlwings.serve = lambda clsid: print('serving', clsid); from xlaxial"
+    done = subprocess.run(
+        [sys.executable, "-B", "-c", code[1].replace("$(CLSID)", "{1-2}").replace("from xlaxial", stand_in)],
+        capture_output=True,
+        text=True,
+        check=False,
+        cwd=tmp_path,
+        env=os.environ | {"LOCALAPPDATA": str(tmp_path), "PYTHONPATH": str(HERE.parents[2])},
+    )
+    assert (done.returncode, done.stdout) == (0, "serving {1-2}\n"), done.stderr
 
 
 def test_the_module_of_all_functions_compiles_and_runs(told):

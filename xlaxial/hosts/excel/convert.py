@@ -37,6 +37,7 @@ LONGEST = 255
 _CODES = {number: code for code, number in ERROR_NUMBERS.items()}
 _SCODE = -2146828288  # 0x800A0000 as a signed number: an error value's number is added to it
 _ERRORS = range(_SCODE + 2000, _SCODE + 2100)
+_INF = math.inf
 _DAY_ZERO = dt.date(1899, 12, 30)  # serial number 0: a time of the day without a date
 
 DOWN, RIGHT = 1, 2
@@ -153,7 +154,7 @@ def cell_out(value: Any) -> Any:
 
 def grid_out(rows: Any) -> list[list[Any]]:
     """Return rows of cells as the wrapper takes them, made rectangular with blanks; nothing at all is #VALUE!."""
-    out = [[cell_out(cell) for cell in row] for row in rows]
+    out = [[cell if type(cell) is float and -_INF < cell < _INF else cell_out(cell) for cell in row] for row in rows]
     width = max(map(len, out), default=0)
     if not width:
         return [[ERROR_NUMBERS["#VALUE!"]]]
