@@ -29,6 +29,23 @@ def connect(pipe: str) -> Any:
             time.sleep(0.2)
 
 
+def contents(desktop: Any, address: str) -> dict[str, Any]:
+    """Open a workbook; return the text of its modules by project, and the cells of its first sheet's columns A and B."""
+    arguments = (named("Hidden", True), named("MacroExecutionMode", 0))
+    document = desktop.loadComponentFromURL(address, "_blank", 0, arguments)
+    try:
+        libraries = document.BasicLibraries
+        projects = {name: libraries.getByName(name) for name in libraries.ElementNames}
+        sheet = document.Sheets.getByIndex(0)
+        return {
+            "modules": {p: {m: lib.getByName(m) for m in lib.ElementNames} for p, lib in projects.items()},
+            "sheet": sheet.Name,
+            "cells": [[sheet.getCellByPosition(x, y).String for x in range(2)] for y in range(4)],
+        }
+    finally:
+        document.close(True)
+
+
 def main() -> None:
     job = json.load(sys.stdin)
     context = connect(job["pipe"])
@@ -51,7 +68,7 @@ def main() -> None:
                 told[name] = str(provider.getScript(address).invoke((), (), ())[0])
             except Exception as wrong:  # noqa: BLE001 - whatever Basic raises is what the test is to see
                 told[name] = f"{type(wrong).__name__}: {wrong}"
-        print(json.dumps(told))
+        print(json.dumps({"run": told, "book": contents(desktop, job["book"])}))
     finally:
         document.close(True)
         desktop.terminate()

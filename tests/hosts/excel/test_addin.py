@@ -7,6 +7,7 @@ import re
 import warnings
 import zipfile
 from pathlib import Path
+from xml.etree import ElementTree
 
 import olefile
 import pytest
@@ -145,14 +146,12 @@ def test_the_untouched_parts_are_those_of_the_template(addin, template):
 
 
 def test_relationships_and_content_types_are_whole(addin):
-    from lxml import etree
-
     with zipfile.ZipFile(addin) as package:
         parts = {name: package.read(name) for name in package.namelist()}
     for name, data in parts.items():
         if name.endswith((".xml", ".rels")):
-            etree.fromstring(data)
-    types = etree.fromstring(parts["[Content_Types].xml"])
+            ElementTree.fromstring(data)
+    types = ElementTree.fromstring(parts["[Content_Types].xml"])
     overrides = {e.get("PartName"): e.get("ContentType") for e in types if e.tag.endswith("Override")}
     defaults = {e.get("Extension") for e in types if e.tag.endswith("Default")}
     assert {part.lstrip("/") for part in overrides} <= set(parts)
@@ -160,11 +159,11 @@ def test_relationships_and_content_types_are_whole(addin):
         assert "/" + name in overrides or name.rpartition(".")[2] in defaults or name == "[Content_Types].xml"
     assert overrides["/xl/workbook.xml"] == "application/vnd.ms-excel.addin.macroEnabled.main+xml"
     assert overrides["/xl/vbaProject.bin"] == "application/vnd.ms-office.vbaProject"
-    relations = etree.fromstring(parts["xl/_rels/workbook.xml.rels"])
+    relations = ElementTree.fromstring(parts["xl/_rels/workbook.xml.rels"])
     targets = {e.get("Id"): (e.get("Type").rpartition("/")[2], e.get("Target")) for e in relations}
     assert {f"xl/{target}" for _, target in targets.values()} <= set(parts)
     assert ("vbaProject", "vbaProject.bin") in targets.values()
-    sheet = etree.fromstring(parts["xl/workbook.xml"]).find(".//{*}sheet")
+    sheet = ElementTree.fromstring(parts["xl/workbook.xml"]).find(".//{*}sheet")
     (key,) = [value for name, value in sheet.attrib.items() if name.endswith("}id")]
     assert targets[key] == ("worksheet", "worksheets/sheet1.xml")
     assert sheet.get("name") == "xlaxial"

@@ -5,12 +5,14 @@ The library that starts Python is replaced by a class of Basic that tells what r
 
 from __future__ import annotations
 
+import io
 import json
 import os
 import re
 import subprocess
 import sys
 import uuid
+import zipfile
 from pathlib import Path
 
 import pytest
@@ -18,6 +20,7 @@ import pytest
 from xlaxial.functions.registry import Argument, Function, load
 from xlaxial.hosts.calc.extension import OFFICE_LEAST
 from xlaxial.hosts.calc.office import command, environment, find_office, write_settings
+from xlaxial.hosts.excel.addin import Settings, build, read_template
 from xlaxial.hosts.excel.vba import Names, module_text
 
 HERE = Path(__file__).parent
@@ -37,6 +40,7 @@ FUNCTIONS = (
 PYTHON = r"C:\A folder\Scripts\pythonw.exe"
 TESTS = (HERE / "basic_tests.bas").read_text(encoding="ascii")
 PROCEDURES = re.findall(r"^Function (\w+)\(\)", TESTS, re.MULTILINE)
+SETTINGS = Settings(PYTHON, r"C:\A & B", "1.2.3", "0.0.1")
 HEAD = "Rem Attribute VBA_ModuleType=VBAModule\nOption VBASupport 1\n"
 LIBRARY = """
 Public Started As Long, Lost As Long, Refuse As Boolean
@@ -71,8 +75,20 @@ def as_basic(text: str) -> str:
     return HEAD + text.replace("\nPrivate axKept", LIBRARY + "\nPrivate axKept", 1)
 
 
+def as_workbook(path: Path) -> Path:
+    """Write the add-in as the kind of workbook that LibreOffice opens: only its content type is another."""
+    template = read_template()
+    addin = build(template, module_text(load().values(), template.names("1.2.3")), SETTINGS)
+    with zipfile.ZipFile(io.BytesIO(addin)) as package, zipfile.ZipFile(path, "w") as out:
+        for name in package.namelist():
+            kind = (b"addin.macroEnabled.main", b"sheet.macroEnabled.main")
+            data = package.read(name)
+            out.writestr(name, data.replace(*kind) if name == "[Content_Types].xml" else data)
+    return path
+
+
 @pytest.fixture(scope="module")
-def told(tmp_path_factory):
+def session(tmp_path_factory):
     office = find_office()
     if office is None or not office.at_least(OFFICE_LEAST):
         (pytest.fail if os.environ.get("CI") else pytest.skip)("LibreOffice is not installed")
@@ -92,6 +108,7 @@ def told(tmp_path_factory):
             "Tests": TESTS,
         },
         "cells": {"B1": PYTHON, "B2": r"C:\A folder", "B3": "5", "B4": "text", "C5": "=1/0"},
+        "book": as_workbook(tmp_path_factory.mktemp("book") / "xlaxial.xlsm").as_uri(),
         "run": ["Product.AX_ABOUT", *(f"Tests.{name}" for name in PROCEDURES)],
     }
     run = command(office, profile, empty, f"--accept=pipe,name={pipe};urp;")
@@ -113,6 +130,11 @@ def told(tmp_path_factory):
             process.kill()
     assert done.returncode == 0, done.stderr
     return json.loads(done.stdout)
+
+
+@pytest.fixture(scope="module")
+def told(session):
+    return session["run"]
 
 
 EXPECTED = {
@@ -163,3 +185,16 @@ def test_the_module_of_all_functions_compiles_and_runs(told):
 
 def test_every_procedure_of_the_tests_is_looked_at():
     assert set(EXPECTED) == set(PROCEDURES)
+
+
+def test_another_program_reads_the_add_in(session):
+    """LibreOffice has its own readers of compound files, of their compression and of the workbook."""
+    book = session["book"]
+    template = read_template()
+    expected = module_text(load().values(), template.names("1.2.3"))
+    modules = book["modules"]["xlaxial"]
+    assert {"ThisWorkbook", "Sheet2", "Dictionary", "xlwings", "Module1"} == set(modules)
+    without_attributes = re.sub(r"^Attribute .*\n", "", expected, flags=re.MULTILINE)
+    assert HEAD + without_attributes.rstrip() == modules["Module1"].replace("\r\n", "\n").rstrip()
+    cells = [["Python", PYTHON], ["Library folder", r"C:\A & B"], ["xlaxial", "1.2.3"], ["xlwings", "0.0.1"]]
+    assert ("xlaxial", cells) == (book["sheet"], book["cells"])

@@ -33,6 +33,7 @@ from xlaxial.hosts.excel.machine import (
     opened_elsewhere,
     this_machine,
 )
+from xlaxial.hosts.excel.server import log_file
 from xlaxial.hosts.excel.vba import module_text
 from xlaxial.hosts.headless.errors import WorkbookError
 from xlaxial.hosts.headless.package import open_package
@@ -185,6 +186,7 @@ def check(machine: Machine | None = None) -> int:
         return FAILED
     bits = f", {excel.bits} bit" if excel.bits else ""
     print(f"Excel {excel.version or '(version not told)'}{bits}: {excel.program}")
+    print(f"faults of the functions are written to {log_file()}")
     template = read_template()
     wrong = [*_of_excel(machine, excel, folder), *_of_addin(machine, excel, template, folder / FILE_NAME)]
     for line in wrong:

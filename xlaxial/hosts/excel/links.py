@@ -199,7 +199,7 @@ def moved(package: zipfile.ZipFile, book: Workbook, addin: str) -> dict[str, byt
         if edits:
             changed[part] = _edited(read_part(package, part), edits)
     bare = not re.search(r"[\\/]", addin)
-    kind, target = (_STARTUP_TYPE, addin) if bare else (_PATH_TYPE, "file:///" + addin)
+    kind, target = (_STARTUP_TYPE, addin) if bare else (_PATH_TYPE, "file:///" + addin.removeprefix("file:///"))
     target = target.replace(" ", "%20")
     for link in book.links:
         if link.number not in ours:

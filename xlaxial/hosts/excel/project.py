@@ -37,7 +37,7 @@ class Project:
     """
 
     def __init__(self, data: bytes) -> None:
-        import olefile  # type: ignore[import-untyped,unused-ignore]  # it ships no type information
+        import olefile  # type: ignore[import-untyped,import-not-found,unused-ignore]  # it ships no type information
 
         try:
             file = olefile.OleFileIO(io.BytesIO(data))
