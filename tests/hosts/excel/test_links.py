@@ -264,6 +264,35 @@ def test_a_failed_write_leaves_the_workbook_whole(tmp_path, monkeypatch, capsys)
     assert [book] == list(tmp_path.iterdir())
 
 
+@pytest.mark.skipif(not Path("/proc/self/fd").exists(), reason="this system does not tell which files are open")
+def test_the_workbook_is_closed_when_it_is_replaced(tmp_path, monkeypatch):
+    """Windows replaces no file that is open."""
+    book = workbook(tmp_path / "b.xlsx", ["[1]!AX_FORCES(A1)"], (OURS,))
+    replace, held = Path.replace, []
+
+    def watched(self, target):
+        for entry in Path("/proc/self/fd").iterdir():
+            if entry.exists() and entry.resolve() in (Path(target), self):
+                held.append(entry)
+        return replace(self, target)
+
+    monkeypatch.setattr(Path, "replace", watched)
+    assert links(book, to_plain=True) == DONE
+    assert formulas(book) == ["AX_FORCES(A1)"]
+    assert held == []
+
+
+def test_a_reference_without_a_link_part_is_left(tmp_path):
+    book = workbook(tmp_path / "b.xlsx", ["[1]!AX_FORCES(A1)"], (OURS,))
+    broken = {name: data.replace(b'Id="rId2"', b'Id="rId9"') for name, data in parts(book).items()}
+    with zipfile.ZipFile(book, "w") as package:
+        for name, data in broken.items():
+            package.writestr(name, data)
+    assert links(book, to_plain=True) == DONE
+    assert formulas(book) == ["AX_FORCES(A1)"]
+    assert set(parts(book)) == set(broken)
+
+
 @pytest.mark.parametrize("content", [b"", b"text", b"\xd0\xcf\x11\xe0\xa1\xb1\x1a\xe1" + bytes(512)])
 def test_other_files_are_told(tmp_path, content, capsys):
     book = tmp_path / "b.xlsx"

@@ -56,7 +56,7 @@ class Workbook:
         """Return the numbers of links to the add-in."""
         named = {number for calls in self.calls.values() for call in calls for number in call.links}
         named |= {link.number for link in self.links if _base(link.target) == FILE_NAME}
-        return named & {link.number for link in self.links}
+        return named & {link.number for link in self.links if link.part}
 
     def used(self) -> set[int]:
         """Return the numbers of links that anything but our calls names."""
@@ -112,7 +112,8 @@ def _relations_of(part: str) -> str:
 def _relations(package: zipfile.ZipFile, part: str) -> list[dict[str, str]]:
     if part not in package.namelist():
         return []
-    return [attributes for *_, attributes in elements(read_part(package, part), {"Relationship"})]
+    found = [attributes for *_, attributes in elements(read_part(package, part), {"Relationship"})]
+    return [attributes for attributes in found if {"Id", "Type", "Target"} <= attributes.keys()]
 
 
 def _resolved(main: str, target: str) -> str:
@@ -253,6 +254,7 @@ def rewrite(path: Path, package: zipfile.ZipFile, changed: Mapping[str, bytes], 
         with zipfile.ZipFile(temporary) as check:
             if check.testzip() is not None:
                 raise WorkbookError(f"{path.name}: what was written does not read back")
+        package.close()  # Windows replaces no file that is open
         shutil.copymode(path, temporary)
         shutil.copy2(path, _backup(path))
         temporary.replace(path)
