@@ -62,6 +62,7 @@ def schedule(tmp_path_factory: pytest.TempPathFactory) -> Path:
     return path
 
 
+SLACK = 2.0  # over each target: a machine with other work must not fail the build; -s prints the ratios
 FUNCTIONS: dict[str, Callable[..., Any]] = {
     "AX_ROW": lambda row, *_: [[row[0][0] * row[0][3]]],
     "AX_TABLE": lambda table, *_: [[row[1] * row[4]] for row in table[1:]],
@@ -79,7 +80,7 @@ def test_verify_against_the_load_by_openpyxl(schedule: Path) -> None:
     assert done.count(SAME) == 0
     floor, took = best(load), best(lambda: recalculate(schedule, FUNCTIONS))
     print(f"verify of {N_ROWS} rows: {took / floor:.2f} x openpyxl's load of formulas and values")
-    assert took <= 3.0 * floor
+    assert took <= SLACK * 3.0 * floor
 
 
 @pytest.mark.benchmark
@@ -102,7 +103,7 @@ def test_own_time_of_a_one_row_call(schedule: Path) -> None:
     own = statistics.median(t - i for t, i in zip(took, inner, strict=True))
     loop = best(lambda: load_workbook(schedule), 1) / (N_ROWS * 12)
     print(f"own time of a one-row call: {own * 1e6:.1f} us, {own / loop:.2f} x openpyxl's load of one cell")
-    assert own <= 5.0 * loop
+    assert own <= SLACK * 5.0 * loop
 
 
 @pytest.mark.benchmark
@@ -112,4 +113,4 @@ def test_start_of_the_list_of_functions() -> None:
 
     floor, took = best(run("-c", "import numpy"), 7), best(run("-m", "xlaxial", "functions"), 7)
     print(f"xlaxial functions: {took / floor:.2f} x python -c 'import numpy'")
-    assert took <= 3.0 * floor
+    assert took <= SLACK * 3.0 * floor

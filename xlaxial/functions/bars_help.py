@@ -124,7 +124,11 @@ MEMBER_WORDS = (
     ResultWord("Segment", "count", "number of the segment with the largest utilisation, from 1 within its mark"),
     COMBINATION,
     ResultWord("Redundants", "count", "unknown forces less the conditions of equilibrium"),
-    ResultWord("Residual", "ratio", "largest force out of balance over the member's largest force"),
+    ResultWord(
+        "Residual",
+        "ratio",
+        "largest force out of balance over the member's largest force; 0 where it is rounding (below 1e-12)",
+    ),
     ResultWord("Pass", "flag", "1 where every segment passes, else 0"),
     STATUS,
 )

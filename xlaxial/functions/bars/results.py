@@ -11,6 +11,7 @@ from xlaxial.functions.bars.solution import Solution
 from xlaxial.tables.words import ResultWord
 
 ALL_CASES = "all cases"
+_ROUNDING = 1e-12  # a residual below is rounding, which no two machines share: it is shown as 0
 _LEVEL = 1e-9  # utilisations this near to each other, relatively, are level: the first of them governs
 
 
@@ -183,7 +184,8 @@ class MemberResults:
         if name == "Redundants":
             out[solution.pieces.kept] = solution.redundants()
         elif name == "Residual":
-            out[solution.pieces.kept] = solution.state.residual[:, 0]
+            residual = np.maximum(solution.state.residual[:, 0], solution.state.imbalance[:, 0])
+            out[solution.pieces.kept] = np.where(residual < _ROUNDING, 0.0, residual)
         elif name == "Segment":
             worst = self._worst_rows()
             out = np.where(worst >= 0, _number_in_mark(inputs.members.row_member, worst), np.nan)

@@ -19,6 +19,7 @@ from xlaxial.solver.lockoff import LockOff, lock_off
 from xlaxial.solver.recovery import BarResults, recover
 from xlaxial.tables.settings import Settings
 
+_ROUNDING = 1e-13  # of a member's largest force: what is below is rounding
 _BROKEN = 1e-6  # a member whose forces are so far out of balance is not shown
 
 
@@ -136,16 +137,38 @@ def _solve_good(inputs: Inputs, rows: RowActions, whole: Problem | None) -> Solu
         return None
     preload = locked.imposed
     state = solve_linear(network, actions, preload)
-    for k in np.flatnonzero(~(state.residual.max(axis=1, initial=0.0) < _BROKEN)).tolist():
+    sound = np.maximum(state.residual, state.imbalance).max(axis=1, initial=0.0) < _BROKEN
+    for k in np.flatnonzero(~sound).tolist():
         what = "stiffnesses differ so much that the forces cannot be told"
         _report(inputs, int(pieces.kept[k]), Problem(what, "make very stiff segments less stiff", code="#NUM!"))
     if len(members.faults) > before:
         return None
+    state = _without_rounding(network, state)
     results = recover(network, actions, state, preload)
     problems = (
         [whole] if inputs.segments.unusable and whole is not None and not inputs.problems() else []
     ) + inputs.problems()
     return Solution(inputs, whole, pieces, network, actions, preload, state, results, stands, problems)
+
+
+def _without_rounding(network: Network, state: LinearState) -> LinearState:
+    """Return the state with forces that are rounding alone, against their member's largest, put to zero.
+
+    So a reaction that comes out zero is zero, on every machine.
+    """
+    forces = (state.force_start, state.force_end, state.reaction)
+    members = (network.bars.member, network.bars.member, network.node_member[network.supports.node])
+    peak = max((float(np.abs(force).max(initial=0.0)) for force in forces), default=0.0)
+    if not any(bool(((force != 0.0) & (np.abs(force) < _ROUNDING * peak)).any()) for force in forces):
+        return state
+    largest = np.zeros((network.n_members, state.force_start.shape[1]))
+    for force, member in zip(forces, members, strict=True):
+        np.maximum.at(largest, member, np.abs(force))
+    start, end, reaction = (
+        np.where(np.abs(force) < _ROUNDING * largest[member], 0.0, force)
+        for force, member in zip(forces, members, strict=True)
+    )
+    return replace(state, force_start=start, force_end=end, reaction=reaction)
 
 
 def _network_nodes(pieces: Pieces, places: Any, entries: Ints) -> Ints:

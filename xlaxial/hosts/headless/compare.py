@@ -10,7 +10,7 @@ from typing import Any
 from openpyxl.utils import get_column_letter
 
 from xlaxial.hosts.headless.engine import Engine
-from xlaxial.hosts.headless.workbook import Book
+from xlaxial.hosts.headless.workbook import Book, Sheet
 
 SAME, DIFFERENT, NOT_STORED, FROZEN = "same", "different", "no stored value", "not recalculated"
 RTOL = 1e-9
@@ -64,6 +64,7 @@ def compare(engine: Engine, book: Book, frozen: dict[tuple[str, int, int], str],
                 left.update(formula.places())
                 spilled.update(dict.fromkeys(replace(formula, area=area).places(), formula.text))
         emptied = left - spilled.keys()
+        scales = _scales(sheet)
         for row, column in {**text, **spilled}:
             place, stored = (sheet.name, row, column), sheet.stored.get((row, column))
             source = text.get((row, column)) or spilled[row, column]
@@ -73,10 +74,26 @@ def compare(engine: Engine, book: Book, frozen: dict[tuple[str, int, int], str],
             new = fifteen_digits(engine.value(*place))
             if new is None and (row, column) not in emptied:
                 new = 0.0
-            state = SAME if equal(stored, new, rtol) else DIFFERENT
+            state = SAME if equal(stored, new, rtol, scales.get((row, column), 0.0)) else DIFFERENT
             if stored is None and new not in ("", None) and (row, column) in text:
                 state = NOT_STORED
             out.append(Result(*place, source, stored, new, state))
+    return out
+
+
+def _scales(sheet: Sheet) -> dict[tuple[int, int], float]:
+    """Return, for cells of arrays, the largest stored magnitude of their column of the array: what rounding goes by."""
+    out: dict[tuple[int, int], float] = {}
+    for formula in sheet.formulas:
+        if formula.area is None:
+            continue
+        c1, r1, c2, r2 = formula.area
+        for column in range(c1, c2 + 1):
+            values = (sheet.stored.get((row, column)) for row in range(r1, r2 + 1))
+            numbers = [abs(v) for v in values if isinstance(v, (int, float)) and not isinstance(v, bool)]
+            scale = max(numbers, default=0.0)
+            if scale:
+                out.update(dict.fromkeys(((row, column) for row in range(r1, r2 + 1)), scale))
     return out
 
 
@@ -87,11 +104,12 @@ def fifteen_digits(value: Any) -> Any:
     return _LONG_NUMBER.sub(lambda found: f"{float(found[0]):.15g}", value)
 
 
-def equal(stored: Any, new: Any, rtol: float) -> bool:
+def equal(stored: Any, new: Any, rtol: float, scale: float = 0.0) -> bool:
     """Whether a stored and a new value are the same.
 
     Numbers within `rtol` of each other; both below 1e-15; or one of them 0, as spreadsheets show what is left of a
-    difference, and the other below 1e-12. A blank and an empty text; texts, booleans and error values exactly.
+    difference, and the other below 1e-12; or both of an array, and within 1e-12 of the largest number `scale` of its
+    column. A blank and an empty text; texts, booleans and error values exactly.
     """
     if stored in (None, "") or new in (None, ""):
         return stored in (None, "") and new in (None, "")
@@ -99,5 +117,5 @@ def equal(stored: Any, new: Any, rtol: float) -> bool:
         return stored is new
     if isinstance(stored, (int, float)) and isinstance(new, (int, float)):
         tiny = _TINY if 0.0 in (stored, new) else _NOISE
-        return math.isclose(stored, new, rel_tol=rtol, abs_tol=tiny)
+        return math.isclose(stored, new, rel_tol=rtol, abs_tol=max(tiny, _TINY * scale))
     return bool(stored == new)
