@@ -88,6 +88,8 @@ def _scales(sheet: Sheet) -> dict[tuple[int, int], float]:
         if formula.area is None:
             continue
         c1, r1, c2, r2 = formula.area
+        if (c2 - c1 + 1) * (r2 - r1 + 1) > len(sheet.stored):  # an area that is mostly not there
+            continue
         for column in range(c1, c2 + 1):
             values = (sheet.stored.get((row, column)) for row in range(r1, r2 + 1))
             numbers = [abs(v) for v in values if isinstance(v, (int, float)) and not isinstance(v, bool)]
