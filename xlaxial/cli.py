@@ -57,6 +57,19 @@ def _parser() -> argparse.ArgumentParser:
     calc.add_argument("--profile", type=Path, help="folder of the office's user profile; the usual one where left out")
     calc.set_defaults(run=_calc)
 
+    excel = commands.add_parser("excel", help="the add-in of Excel for Windows: install, remove or check it")
+    excel.add_argument("action", choices=("install", "remove", "check"))
+    excel.add_argument("--to", type=Path, help="with install: write the add-in's file here instead")
+    excel.add_argument("--python", help="with install: the Python that answers Excel; this one where left out")
+    excel.set_defaults(run=_excel)
+
+    links = commands.add_parser("links", help="list, mend or remove the add-in's path in a workbook's formulas")
+    links.add_argument("book", type=Path)
+    how = links.add_mutually_exclusive_group()
+    how.add_argument("--plain", action="store_true", help="leave plain function names")
+    how.add_argument("--to", metavar="ADDIN", help="point the formulas at this add-in")
+    links.set_defaults(run=_links)
+
     demo = commands.add_parser("demo", help="write the demo schedule of quay tie rods")
     demo.add_argument("output", type=Path)
     demo.set_defaults(run=_demo)
@@ -94,6 +107,20 @@ def _calc(options: argparse.Namespace) -> int:
 
     actions = {"install": commands.install, "remove": commands.remove, "check": commands.check}
     return actions[options.action](options.profile)
+
+
+def _excel(options: argparse.Namespace) -> int:
+    from xlaxial.hosts.excel import commands
+
+    if options.action == "install":
+        return commands.install(options.to, options.python)
+    return commands.remove() if options.action == "remove" else commands.check()
+
+
+def _links(options: argparse.Namespace) -> int:
+    from xlaxial.hosts.excel import commands
+
+    return commands.links(options.book, options.plain, options.to)
 
 
 def _demo(options: argparse.Namespace) -> int:
