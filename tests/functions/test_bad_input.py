@@ -282,3 +282,36 @@ def test_no_exception_reaches_a_cell() -> None:
     for argument in (None, 5, "x", CellError("#N/A"), [[object()]], [[]], [[], [1]], ()):
         assert isinstance(AX_SEGMENTS(argument, argument), list)
         assert isinstance(AX_REACTIONS(argument, argument, argument), list)
+
+
+def test_a_row_that_holds_for_every_member_fails_every_member_that_it_concerns() -> None:
+    """Without a Mark column the first member's failure must not let the row drop out of the others in silence."""
+    segments = [HEADINGS, ["G", 1000, 500, 200, 12, 10, None], ["B", 1000, 500, 200, 12, 10, None]]
+    ends = [["Node", "Stiffness (kN/mm)"], [0, None], [1, 40]]
+    loads = [["Segment", "q (kN/m)"], [2, 5]]
+    assert AX_SEGMENTS(segments, ends, loads, "kN") == [[VALUE], [VALUE]]
+    nowhere = [*ends, [None, 70]]
+    assert AX_SEGMENTS(segments, nowhere, None, "kN") == [[VALUE], [VALUE]]
+
+
+def test_a_segment_row_that_names_no_member_is_said_in_every_status_and_only_then() -> None:
+    whole = AX_SEGMENTS(schedule([None, 1000, 500, 200, 12, 0, None]), supports(), None, "Status")
+    assert "rows of the segments table name no member" in whole[0][0]
+    totals = AX_SEGMENTS(schedule(["Total", 1000, 500, 200, 12, 0, None]), supports(), None, "Status")
+    assert "name no member" not in totals[0][0]
+    held = CellRange([*supports("B")[:4], ["B", 1, "soft"]], "Ends", 1, 1)
+    wrong = AX_SEGMENTS(schedule(["B", 1000, 500, 200, 12, 0, None]), held, None, "Status")
+    assert "name no member" not in wrong[0][0]
+    assert "'soft' is not a number" in wrong[1][0]
+
+
+def test_status_says_which_wanted_heading_is_not_understood() -> None:
+    [[good, bad, status]] = AX_SEGMENTS(schedule(), supports(), None, [["Force (kN)", "Colour", "Status"]])
+    assert bad == NAME
+    assert "'Colour' is not understood" in status and isinstance(good, float)
+
+
+def test_hardening_may_be_a_modulus_or_a_ratio() -> None:
+    for heading, value in (("Hardening (GPa)", 2.1), ("Hardening", 0.01), ("Et/E (%)", 1)):
+        table = [[*HEADINGS, heading], ["G", 1000, 500, 200, 12, 10, None, value]]
+        assert AX_SEGMENTS(table, supports(), None, "kN") == [[pytest.approx(-12.0)]]

@@ -272,3 +272,11 @@ def test_a_tube_of_a_steel_graded_by_diameter_takes_its_outside_diameter() -> No
     [[utilisation, status]] = AX_SEGMENTS(unknown, [["Node"], [0], [1]], None, [["Utilisation", "Status"]])
     assert utilisation == CellError("#N/A")
     assert "fill in Yield" in status or "Yield, " in status
+
+
+def test_reactions_of_rows_that_a_one_row_call_passes_over_are_not_applicable() -> None:
+    ends = [["Mark", "Node", "Stiffness (kN/mm)"], ["T2", 0, None], ["T2", 1, 25], [None, None, None], ["T1", 0, None]]
+    answer = AX_REACTIONS([PLAIN[3]], ends, None, "kN", None, None, [PLAIN[0]])
+    force = expected()[2][0]
+    assert answer[0] == [pytest.approx(-float(force.expected))]
+    assert answer[2:] == [[None], [CellError("#N/A")]]

@@ -73,6 +73,7 @@ def _ties() -> list[dict[str, Any]]:
 def _segments(ties: list[dict[str, Any]]) -> list[list[Any]]:
     rows = []
     for i, tie in enumerate(ties):
+        # tensile stress area of the thread, pitch 6 mm: ISO 898-1, 9.1.6.1, pi/4 (d - 0.938194 P)^2, from memory
         stress_area = round(0.7854 * (tie["thread"] - 0.9382 * 6) ** 2)
         upset: list[Any] = [
             "upset end, wall",

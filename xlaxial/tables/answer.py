@@ -50,7 +50,8 @@ def answer_rows(
     """
     blank = list(blank)
     codes = {code: CellError(code) for code in {problem.code for problem in failed.values()}}
-    columns = [_column(column, n_rows, values, failed, codes, blank) for column in wanted.columns]
+    unread = "; ".join(problem.text() for problem in wanted.problems())
+    columns = [_column(column, n_rows, values, failed, codes, blank, unread) for column in wanted.columns]
     with _uncollected():
         rows = list(map(list, zip(*columns, strict=True))) if columns else []
     if wanted.with_headings:
@@ -77,6 +78,7 @@ def _column(
     failed: Mapping[int, Problem],
     codes: Mapping[str, CellError],
     blank: Sequence[int],
+    unread: str,
 ) -> list[Any]:
     if column.problem is not None:
         out: list[Any] = [CellError(column.problem.code)] * n_rows
@@ -89,6 +91,8 @@ def _column(
         if column.word.name == "Status":
             for row, problem in failed.items():
                 out[row] = problem.text()
+            if unread:
+                out = [text if text is None else f"{text}; {unread}" for text in out]
         else:
             for row, problem in failed.items():
                 out[row] = codes[problem.code]

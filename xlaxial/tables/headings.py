@@ -14,6 +14,7 @@ class Term:
     help: str  # one clause: what stands in it, its sign, what a blank means
     aliases: tuple[str, ...] = ()  # other spellings and symbols; case, spaces and punctuation do not matter
     positive: bool = False  # a value that is zero or negative is an error
+    also: str = ""  # another dimension that its unit may have
 
 
 @dataclass(frozen=True)
@@ -157,7 +158,11 @@ SEGMENTS = TableKind(
             positive=True,
         ),
         Term(
-            "Hardening", "ratio", "slope after yield as Et/E, or a modulus with its unit", ("Et/E", "Tangent modulus")
+            "Hardening",
+            "ratio",
+            "slope after yield as Et/E, or a modulus with its unit",
+            ("Et/E", "Tangent modulus"),
+            also="stress",
         ),
         Term(
             "Net area",

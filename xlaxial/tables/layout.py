@@ -160,7 +160,7 @@ def find_layout(block: Any, kind: TableKind, settings: Settings) -> Layout:
         read = None
         if term.dimension not in ("text", "count") and unit_text is not None:
             try:
-                read = unit(unit_text, term.dimension)
+                read = _unit(unit_text, term)
             except UnitError as wrong:
                 problems.append(
                     replace(
@@ -175,6 +175,16 @@ def find_layout(block: Any, kind: TableKind, settings: Settings) -> Layout:
             read = Unit("", 1.0)
         headings[term.name] = Heading(term, j, str(cell), read)
     return Layout(best, (units_row if units_row >= 0 else best) + 1, headings, tuple(problems))
+
+
+def _unit(text: str, term: Term) -> Unit:
+    """Read a heading's unit, of its dimension or of the other one that it may have."""
+    if term.also:
+        try:
+            return unit(text, term.also)
+        except UnitError:
+            pass
+    return unit(text, term.dimension)
 
 
 def _units_row(block: Any, heading_row: int, kind: TableKind, mapped: dict[str, Term]) -> int:

@@ -136,11 +136,12 @@ def test_a_function_without_arguments():
     assert call("AX_CLOCK") == [[12.0]]
 
 
-def test_a_wrapper_that_is_not_ours_is_told_so():
+def test_a_wrapper_that_is_not_ours_is_an_error_value_and_told_in_the_log(caplog):
     from xlwings.com_server import XLPython
 
     answer = XLPython().CallUDF("stubbed_functions", "AX_SINGLE", ("one",))
-    assert "xlaxial excel install" in answer
+    assert answer == 2015  # #VALUE!: a text would pass MAX and SUM; the log says what to do
+    assert "xlaxial excel install" in caplog.text
 
 
 def test_xlwings_sees_raw_arguments_and_help():

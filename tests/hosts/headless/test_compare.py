@@ -7,7 +7,10 @@ from typing import Any
 import pytest
 
 from xlaxial import CellError
-from xlaxial.hosts.headless.compare import equal, fifteen_digits
+from xlaxial.hosts.headless.commands import changed_values
+from xlaxial.hosts.headless.compare import DIFFERENT, SAME, equal, fifteen_digits
+from xlaxial.hosts.headless.patch import write_values
+from xlaxial.hosts.headless.recalculate import recalculate
 from xlaxial.hosts.headless.stored import StoredValues
 
 NA, NUM = CellError("#N/A"), CellError("#NUM!")
@@ -96,3 +99,22 @@ def test_stored_values(cell: bytes, value: Any) -> None:
     stored = StoredValues(data, lambda: ["first", "second"])[2, 2]
     assert type(stored) is type(value)
     assert stored == value
+
+
+@pytest.mark.parametrize(
+    ("stored", "new", "states"),
+    [
+        ((1000.0, 1e-14), (1000.0, 3e-14), (SAME, SAME)),  # rounding beside the column's numbers
+        ((1000.0, 1e-8), (1000.0, 3e-8), (SAME, DIFFERENT)),
+        ((1e15, 0.5), (10.0, 0.75), (DIFFERENT, DIFFERENT)),  # one wrong number hides no other
+        ((10.0, 0.5), (1e15, 0.75), (DIFFERENT, DIFFERENT)),
+    ],
+)
+def test_rounding_goes_by_the_numbers_of_a_column_of_ours(
+    make_book: Any, stored: tuple[float, ...], new: tuple[float, ...], states: tuple[str, ...]
+) -> None:
+    book = make_book({"S!C1": 1}, {"S!A1:A2": "=AX_B()"})
+    first = recalculate(book, {"AX_B": lambda: [[value] for value in stored]})
+    write_values(book, changed_values(first), book)
+    again = recalculate(book, {"AX_B": lambda: [[value] for value in new]})
+    assert tuple(r.state for r in again.results) == states

@@ -66,8 +66,7 @@ def _add_loads(inputs: Inputs, columns: dict[str, Floats], preloaded: Flags, set
 
     def fail(mask: Flags, term: str | None, what: str, remedy: str) -> None:
         for k in np.flatnonzero(mask).tolist():
-            if int(rows[k]) not in table.wrong:
-                members.fail_row(table, int(rows[k]), Problem(what, remedy), term, int(own[k]))
+            members.fail_row_once(table, int(rows[k]), Problem(what, remedy), term, int(own[k]))
 
     given = {name: table.present(name)[rows] for name in _VALUES if table.layout.has(name)}
     placed = (places.node >= 0) | (places.segment >= 0)

@@ -38,6 +38,16 @@ class Members:
         table.report(row, replace(problem, mark=problem.mark or mark), term)
         self.fail(member, table.wrong[row])
 
+    def fail_row_once(self, table: Table, row: int, problem: Problem, term: str | None, member: int) -> None:
+        """Fail a member by a row, reporting the row only where nothing is wrong with it yet.
+
+        A row that holds for several members fails each of them by what is wrong with it.
+        """
+        if row in table.wrong:
+            self.fail(member, table.wrong[row])
+        else:
+            self.fail_row(table, row, problem, term, member)
+
     def good(self) -> Flags:
         """Members without a fault."""
         flags = np.ones(self.count, dtype=bool)

@@ -39,8 +39,7 @@ def read_sections(table: Table, members: Members) -> Sections:
         if not mask.any():
             return
         for i in np.flatnonzero(mask & rows).tolist():
-            if i not in table.wrong:
-                members.fail_row(table, i, Problem(what, remedy), term, int(members.row_member[i]))
+            members.fail_row_once(table, i, Problem(what, remedy), term, int(members.row_member[i]))
 
     length = table.values("Length", np.nan)
     fail(np.isnan(length), "Length", "Length is blank", "write the segment's length")

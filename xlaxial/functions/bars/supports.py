@@ -57,6 +57,18 @@ class ReactionResults:
             several[row] = several.get(row, 0) + 1
             if member in faults:
                 out.setdefault(row, faults[member])
+        if inputs.one_row:
+            for row in np.flatnonzero(table.filled).tolist():
+                if row not in several:
+                    out.setdefault(
+                        row,
+                        Problem(
+                            "the row belongs to no member of this call",
+                            "read it in the call of its own member",
+                            table.address(row),
+                            code="#N/A",
+                        ),
+                    )
         for row, count in several.items():
             if count > 1:
                 what = "the row holds for several members"
@@ -65,7 +77,7 @@ class ReactionResults:
         return out
 
     def blank(self) -> list[int]:
-        """Rows that stay blank: blank and note rows, and rows of marks that a one-row call passes over."""
+        """Rows that stay blank: blank and note rows."""
         table = self._placed.table
         held = np.zeros(self.n_rows, dtype=bool)
         held[self._placed.rows] = True

@@ -15,8 +15,9 @@ from xlaxial.functions.memory import Memory, content_key
 from xlaxial.problems import Problem
 from xlaxial.tables.headings import TABLES
 from xlaxial.tables.layout import Layout
-from xlaxial.tables.read import Table, read_table
+from xlaxial.tables.read import TOTALS, Table, read_table
 from xlaxial.tables.settings import Settings
+from xlaxial.units import normal
 
 _SHARED: Memory[Table] = Memory(32)
 LATER = "is not solved by this version"
@@ -30,6 +31,7 @@ class Placed:
     rows: Ints  # (n,) row of the table; a row that holds for every member stands once for each
     member: Ints  # (n,)
     places: Places
+    lost: bool = False  # a row that holds inputs could be told to belong to no member
 
 
 @dataclass(frozen=True)
@@ -45,6 +47,7 @@ class Inputs:
     loads: Placed
     cases: tuple[str, ...]  # names of the load cases that stand in the loads table
     remarks: tuple[str, ...]  # what every Status is to say
+    one_row: bool = False  # headings were handed over: the other tables may name marks that stand elsewhere
 
     def problems(self) -> list[Problem]:
         """All problems of the inputs, table by table."""
@@ -87,14 +90,19 @@ def read_inputs(segments: Any, supports: Any, loads: Any, settings: Settings, he
     placed_loads = _place(load_table, members, nodes, sections, one_row)
     cases = tuple(dict.fromkeys(case for case in load_table.labels.get("Case", []) if case is not None))
     remarks = []
-    for other in (support_table, load_table):
+    astray = table.filled & (members.row_member < 0)
+    if any(table.marks[i] is None or normal(table.marks[i]) not in TOTALS for i in np.flatnonzero(astray).tolist()):
+        remarks.append("rows of the segments table name no member: see Problems")
+    for placed in (placed_supports, placed_loads):
+        other = placed.table
         held = "Mark" not in other.layout.headings and members.count > 1 and bool(other.filled.any())
         if held:
             remarks.append(f"the {other.kind} table has no Mark: held for every member")
-        lost = [p for p in other.problems if p.mark and p.mark not in members.code_of]
-        if lost or any(p.heading and not p.mark for p in other.problems):
+        if placed.lost:
             remarks.append(f"rows of the {other.kind} table name no member: see Problems")
-    return Inputs(settings, table, members, sections, nodes, placed_supports, placed_loads, cases, tuple(remarks))
+    return Inputs(
+        settings, table, members, sections, nodes, placed_supports, placed_loads, cases, tuple(remarks), one_row
+    )
 
 
 def _optional(block: Any, kind: str, settings: Settings, one_row: bool) -> Table:
@@ -123,7 +131,10 @@ def _place(table: Table, members: Members, nodes: Nodes, sections: Sections, one
         rows, own = np.repeat(rows, members.count), np.tile(np.arange(members.count), rows.size)
     _refuse_laws(table, members, rows, own)
     places = find_places(table, rows, own, nodes, members, sections.length)
-    return Placed(table, rows, own, places)
+    lost = table.filled & (member == -1)
+    if one_row:  # marks that stand elsewhere are passed over
+        lost &= np.array([mark is None for mark in table.marks], dtype=bool)
+    return Placed(table, rows, own, places, bool(lost.any()))
 
 
 def _refuse_laws(table: Table, members: Members, rows: Ints | None = None, own: Ints | None = None) -> None:
@@ -159,10 +170,9 @@ def _check_supports(placed: Placed, members: Members) -> None:
         return
     nowhere = (places.node < 0) & (places.segment < 0)
     for k in np.flatnonzero(nowhere).tolist():
-        row = int(placed.rows[k])
-        if row not in table.wrong:
-            problem = Problem("the support stands nowhere", "write its Node, or x")
-            members.fail_row(table, row, problem, "Node" if table.layout.has("Node") else "x", int(placed.member[k]))
+        problem = Problem("the support stands nowhere", "write its Node, or x")
+        term = "Node" if table.layout.has("Node") else "x"
+        members.fail_row_once(table, int(placed.rows[k]), problem, term, int(placed.member[k]))
     rigid = ~table.present("Stiffness")[placed.rows] & ~nowhere
     seen: dict[tuple[int, int, float], int] = {}
     node = places.node[rigid]

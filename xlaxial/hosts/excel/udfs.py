@@ -54,7 +54,8 @@ def _registered(function: Function, find: Caller) -> Callable[..., Any]:
     def call(*given: Any) -> list[list[Any]]:
         try:
             if len(given) <= len(names) or not isinstance(given[len(names)], str):
-                return [[_UNPLACED]]
+                _LOG.error("%s: %s", function.name, _UNPLACED)
+                return [[ERROR_NUMBERS["#VALUE!"]]]  # a text would pass MAX and SUM
             places = given[len(names)].split("\n")
             if len(places) != len(names) + 1:
                 places = [""] * len(names)

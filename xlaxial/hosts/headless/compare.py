@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 import re
+from collections.abc import Iterable
 from dataclasses import dataclass, replace
 from typing import Any
 
@@ -64,7 +65,7 @@ def compare(engine: Engine, book: Book, frozen: dict[tuple[str, int, int], str],
                 left.update(formula.places())
                 spilled.update(dict.fromkeys(replace(formula, area=area).places(), formula.text))
         emptied = left - spilled.keys()
-        scales = _scales(sheet)
+        scales = _scales(sheet, engine)
         for row, column in {**text, **spilled}:
             place, stored = (sheet.name, row, column), sheet.stored.get((row, column))
             source = text.get((row, column)) or spilled[row, column]
@@ -81,22 +82,29 @@ def compare(engine: Engine, book: Book, frozen: dict[tuple[str, int, int], str],
     return out
 
 
-def _scales(sheet: Sheet) -> dict[tuple[int, int], float]:
-    """Return, for cells of arrays, the largest stored magnitude of their column of the array: what rounding goes by."""
+def _scales(sheet: Sheet, engine: Engine) -> dict[tuple[int, int], float]:
+    """Return, for cells of our own arrays, the largest magnitude of their column of the array: what rounding goes by.
+
+    The smaller of the largest stored and the largest new one, so that one wrong number hides no other.
+    """
     out: dict[tuple[int, int], float] = {}
     for formula in sheet.formulas:
-        if formula.area is None:
+        if formula.area is None or "AX_" not in formula.text.upper():
             continue
         c1, r1, c2, r2 = formula.area
         if (c2 - c1 + 1) * (r2 - r1 + 1) > len(sheet.stored):  # an area that is mostly not there
             continue
         for column in range(c1, c2 + 1):
-            values = (sheet.stored.get((row, column)) for row in range(r1, r2 + 1))
-            numbers = [abs(v) for v in values if isinstance(v, (int, float)) and not isinstance(v, bool)]
-            scale = max(numbers, default=0.0)
+            rows = range(r1, r2 + 1)
+            stored = _largest(sheet.stored.get((row, column)) for row in rows)
+            scale = min(stored, _largest(engine.value(sheet.name, row, column) for row in rows)) if stored else 0.0
             if scale:
                 out.update(dict.fromkeys(((row, column) for row in range(r1, r2 + 1)), scale))
     return out
+
+
+def _largest(values: Iterable[Any]) -> float:
+    return max((abs(v) for v in values if isinstance(v, (int, float)) and not isinstance(v, bool)), default=0.0)
 
 
 def fifteen_digits(value: Any) -> Any:
